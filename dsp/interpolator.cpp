@@ -1,0 +1,57 @@
+#include "dsp/interpolator.h"
+
+#include <algorithm>
+#include <boost/math/special_functions/bessel.hpp>
+#include <cmath>
+#include <numbers>
+
+#include "dsp/kernels.h"
+
+namespace unsoldered {
+namespace {
+
+constexpr double suppression_db = 92;
+constexpr double pass_hz = 20000;
+constexpr double least_pass = 0.4167;  // of the rate; above 48 kHz the pass band grows with the rate
+constexpr double most_pass = 0.4535;   // 20 kHz at 44.1 kHz; below that the pass band shrinks with the rate
+
+double kaiser_beta() { return 0.1102 * (suppression_db - 8.7); }
+
+int kaiser_taps(double rate_hz) {
+  const double pass = std::clamp(pass_hz / rate_hz, least_pass, most_pass);
+  const double transition = 1 - 2 * pass;
+  const double length = (suppression_db - 7.95) / (2.285 * 2 * std::numbers::pi * transition) + 1;
+  return 2 * static_cast<int>(std::ceil(length / 2));
+}
+
+double windowed_sinc(double t, double half_length) {
+  if (std::abs(t) >= half_length) return 0;
+  const double x = std::numbers::pi * t;
+  const double sinc = std::abs(x) < 1e-9 ? 1 : std::sin(x) / x;
+  const double share = t / half_length;
+  const double beta = kaiser_beta();
+  return sinc * boost::math::cyl_bessel_i(0, beta * std::sqrt(1 - share * share)) / boost::math::cyl_bessel_i(0, beta);
+}
+
+}  // namespace
+
+Interpolator::Interpolator(double rate_hz) : taps_(kaiser_taps(rate_hz)) {
+  constexpr int nodes = 32;
+  const double half = taps_ / 2.0;
+  weights_.assign(static_cast<std::size_t>(moments * taps_), 0);
+  for (int k = 0; k < taps_; ++k) {
+    for (int node = 0; node < nodes; ++node) {
+      const double angle = std::numbers::pi * (node + 0.5) / nodes;
+      const double tau = (std::cos(angle) + 1) / 2;
+      const double value = windowed_sinc(tau + half - 1 - k, half);
+      for (int p = 0; p < moments; ++p)
+        weights_[static_cast<std::size_t>(p * taps_ + k)] += value * std::cos(p * angle) * (p == 0 ? 1.0 : 2.0) / nodes;
+    }
+  }
+}
+
+void Interpolator::process(const double* input, int frames, double* out, int stride) const noexcept {
+  interval_moments(input, frames, weights_.data(), taps_, moments, out, stride);
+}
+
+}  // namespace unsoldered

@@ -1,0 +1,5 @@
+#include "dsp/kernels_dispatch.h"
+
+namespace unsoldered::plain {
+#include "dsp/kernels_body.inc"
+}  // namespace unsoldered::plain

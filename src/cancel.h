@@ -1,0 +1,17 @@
+// Ctrl-C: long work polls, tidies up and throws; main() turns that into exit status 130.
+#pragma once
+
+namespace unsoldered {
+
+struct Interrupted {};
+
+/// Installs the handler for SIGINT and SIGTERM. Main thread, once.
+void watch_for_interrupt();
+
+/// True after the first signal. Any thread.
+bool interrupted() noexcept;
+
+/// Throws Interrupted when interrupted().
+void stop_if_interrupted();
+
+}  // namespace unsoldered

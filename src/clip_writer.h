@@ -1,0 +1,61 @@
+// Writes one clip as WAV, streamed: integer samples are rounded, clipped and (16 bits) dithered here, in wide loops, and
+// handed to libsndfile as they will stand in the file.
+//
+// 24 bits are rounded without dither: the error, -146 dBFS, lies far under the noise of any recording.
+//
+// Files are reproducible byte for byte (no PEAK chunk, which carries a time stamp). Longer than 4 GiB: RF64.
+#pragma once
+
+#include <cstdint>
+#include <filesystem>
+#include <string>
+#include <vector>
+
+#include "src/dither.h"
+#include "src/file_handle.h"
+#include "src/take.h"
+
+namespace unsoldered {
+
+enum class Depth { pcm16, pcm24, float32 };
+
+/// "16", "24", "float"; `where` opens the message. Throws InputError.
+Depth parse_depth(const std::string& text, const std::string& where);
+
+class ClipWriter {
+ public:
+  /// Creates `path`, which must not exist. `name` is what messages call the clip and what seeds its dither.
+  /// `format.frames` decides between plain WAV and RF64 (0, unknown: RF64 that turns into WAV when short).
+  /// Throws CannotError with the system's reason.
+  ClipWriter(const std::filesystem::path& path, std::string name, TakeFormat format, Depth depth);
+
+  /// Appends planar frames times `gain`, full scale 1. Throws CannotError: disk full, or a sample that is not finite.
+  void write(const double* const* channels, int frames, double gain);
+
+  /// Completes the file. Throws CannotError. Not called: the file stays incomplete, for the owner of the path to remove.
+  void close();
+
+  /// Largest magnitude among the samples as written, full scale 1.
+  double peak() const noexcept { return peak_; }
+
+ private:
+  void write_integers(const double* const* channels, int frames, double gain);
+  bool quantise(const double* from, double factor, double scale, std::size_t channel) noexcept;  // to whole_; finite?
+  void write_floats(const double* const* channels, int frames, double gain);
+  [[noreturn]] void refuse(const double* const* channels, int frames, double gain) const;
+  [[noreturn]] void failed(const std::string& reason) const;
+
+  std::string name_;
+  FileHandle descriptor_;  // outlives sound_
+  SoundHandle sound_;
+  int channels_;
+  Depth depth_;
+  std::vector<TriangularDither> dither_;  // one a channel
+  std::int64_t frames_written_ = 0;
+  double peak_ = 0;
+  std::vector<std::int32_t> whole_;
+  std::vector<unsigned char> bytes_;
+  std::vector<float> floats_;
+};
+
+}  // namespace unsoldered

@@ -1,0 +1,20 @@
+#include "src/hookup_options.h"
+
+#include "src/hookup_file.h"
+
+namespace unsoldered {
+
+Hookup HookupOptions::read() const { return read_hookup(file, settings); }
+
+void add_hookup_options(CLI::App& verb, HookupOptions& options) {
+  verb.add_option("HOOKUP", options.file, "Hookup file (*.hookup.toml)")->required();
+  verb.add_option("--set", options.settings, "Overrides a value of the hookup, such as tone.dial=4; may be repeated")
+      ->allow_extra_args(false)
+      ->type_name("KEY=VALUE");
+}
+
+void add_json_option(CLI::App& verb, bool& json) {
+  verb.add_flag("--json", json, "JSON instead of CSV: an array of objects with the same names");
+}
+
+}  // namespace unsoldered

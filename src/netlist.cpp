@@ -1,0 +1,51 @@
+#include "src/netlist.h"
+
+#include <array>
+#include <charconv>
+
+#include "dsp/hookup_network.h"
+
+namespace unsoldered {
+namespace {
+
+/// Shortest text that reads back as the same number; ngspice takes exponents.
+std::string exact_number(double value) {
+  std::array<char, 32> text{};
+  return {text.data(), std::to_chars(text.data(), text.data() + text.size(), value).ptr};
+}
+
+std::string node_text(const Network& network, Node node) {
+  return node == Network::ground ? "0" : network.node_names[static_cast<std::size_t>(node)];
+}
+
+std::string printable(const std::string& title) {
+  std::string result;
+  for (const char letter : title) result += static_cast<unsigned char>(letter) < ' ' ? ' ' : letter;
+  return result;
+}
+
+}  // namespace
+
+std::string netlist_text(const Hookup& hookup, double dial) {
+  const Network network = hookup_network(hookup, dial);
+  std::string deck = "* " + printable(hookup.title) + ", volume at " + exact_number(dial) + "\n";
+  deck += "Vemf emf 0 AC 1\n";
+  int number = 0;
+  for (const Branch& branch : settle(network)) {
+    ++number;
+    const bool wire = branch.kind == BranchKind::resistor && branch.value == 0;
+    const char letter = wire                                     ? 'V'
+                        : branch.kind == BranchKind::resistor    ? 'R'
+                        : branch.kind == BranchKind::capacitor   ? 'C'
+                                                                 : 'L';
+    deck += letter + std::to_string(number) + " " + node_text(network, branch.a) + " " + node_text(network, branch.b) +
+            " " + exact_number(branch.value) + " $ " + branch.name + "\n";
+  }
+  deck +=
+      ".ac dec 20 20 20k\n"
+      ".print ac vdb(grid) vp(grid)\n"
+      ".end\n";
+  return deck;
+}
+
+}  // namespace unsoldered
