@@ -11,8 +11,7 @@
 namespace unsoldered {
 namespace {
 
-constexpr std::array<std::string_view, 7> kDrawnNodes = {"emf",    "source", "top",   "wiper",
-                                                         "bottom", "output", "grid"};
+constexpr std::array<std::string_view, 7> kDrawnNodes = {"emf", "source", "top", "wiper", "bottom", "output", "grid"};
 
 bool is_drawn(const Hookup& hookup, std::string_view node) {
   return node == "ground" || (node == "coil" && hookup.source.kind == SourceKind::pickup) ||
@@ -61,7 +60,8 @@ void validate_node_name(const std::string& node, const std::string& key) {
     return (c >= 'a' && c <= 'z') || (c >= '0' && c <= '9') || c == '_' || c == '-';
   });
   require(spelled, key,
-          "\"" + node + "\" is not a node name; accepted are lower-case letters, digits, '-' and '_', as in \"wiper\" or \"x1\"");
+          "\"" + node +
+              "\" is not a node name; accepted are lower-case letters, digits, '-' and '_', as in \"wiper\" or \"x1\"");
   constexpr std::string_view kept = "_inside";  // nodes inside the blocks are called that
   require(node.size() < kept.size() || node.compare(node.size() - kept.size(), kept.size(), kept) != 0, key,
           "node names that end in _inside are taken; choose another");
@@ -105,8 +105,8 @@ bool one_slip_apart(std::string_view a, std::string_view b) {
   if (a.size() < b.size()) {
     return rest_a == rest_b.substr(1);
   }
-  return rest_a.substr(1) == rest_b.substr(1) ||
-         (rest_a.size() > 1 && rest_a[0] == rest_b[1] && rest_a[1] == rest_b[0] && rest_a.substr(2) == rest_b.substr(2));
+  return rest_a.substr(1) == rest_b.substr(1) || (rest_a.size() > 1 && rest_a[0] == rest_b[1] &&
+                                                  rest_a[1] == rest_b[0] && rest_a.substr(2) == rest_b.substr(2));
 }
 
 /// A new node that only one part reaches and that is spelled nearly like a drawn one is a slip of the pen.
@@ -149,7 +149,8 @@ void validate(const Hookup& hookup) {
             "[[extra]])");
   }
   if (hookup.source.kind == SourceKind::piezo) {
-    require(hookup.source.capacitance_f.value_or(0) > 0, "source.capacitance", "a piezo needs a capacitance above zero");
+    require(hookup.source.capacitance_f.value_or(0) > 0, "source.capacitance",
+            "a piezo needs a capacitance above zero");
   }
   for (std::size_t i = 0; i < hookup.extra.size(); ++i) {
     validate_extra(hookup, hookup.extra[i], "extra." + std::to_string(i));

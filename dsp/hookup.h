@@ -1,4 +1,5 @@
-// A hookup: one complete answer to "what drives what": source, volume pot, treble bleed, tone, cable, extra parts, load.
+// A hookup: one complete answer to "what drives what": source, volume pot, treble bleed, tone, cable, extra parts,
+// load.
 //
 // Plain values in SI units. How they become a circuit is in hookup_network.h; how they are written in a file is src/'s.
 #pragma once
@@ -111,8 +112,8 @@ class HookupError : public InputError {
   std::string key_;
 };
 
-/// Checks what no single value shows: ends and dead travel against the whole, resistors of the treble bleed, bands, and the
-/// places of the extra parts. Throws HookupError. Whether the network has a solution is asked elsewhere.
+/// Checks what no single value shows: ends and dead travel against the whole, resistors of the treble bleed, bands, and
+/// the places of the extra parts. Throws HookupError. Whether the network has a solution is asked elsewhere.
 void validate(const Hookup& hookup);
 
 /// A wire of the drawing that a part may stand in for, its nodes in the order of the signal.

@@ -30,7 +30,7 @@ class Interpolator {
   double weight(int p, int k) const noexcept { return weights_[static_cast<std::size_t>(p * taps_ + k)]; }
 
   /// Moments of the `frames` intervals that end latency() samples before each of input[0..frames-1]; input[-taps+1..] must
-  /// be readable. out[p * stride + n]. Audio thread.
+  /// be readable. out[p * stride + n]. Both are used up to the next multiple of 16 frames. Audio thread.
   void process(const double* input, int frames, double* out, int stride) const noexcept;
 
  private:

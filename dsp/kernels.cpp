@@ -17,10 +17,6 @@ const bool is_wide = machine_is_wide();
 
 }  // namespace
 
-void mix(const double* a, const double* b, double share, double* out, int count) noexcept {
-  (is_wide ? wide::mix : plain::mix)(a, b, share, out, count);
-}
-
 void interval_moments(const double* input, int frames, const double* weights, int taps, int moments, double* out,
                       int stride) noexcept {
   (is_wide ? wide::interval_moments : plain::interval_moments)(input, frames, weights, taps, moments, out, stride);
@@ -30,10 +26,12 @@ void convolve(const double* input, int frames, const double* response, int taps,
   (is_wide ? wide::convolve : plain::convolve)(input, frames, response, taps, out);
 }
 
-void half_step(const double* transition, const double* drive, int states, int padded, const double* from,
-               const double* moments, int moment_count, int stride, double* to) noexcept {
-  (is_wide ? wide::half_step : plain::half_step)(transition, drive, states, padded, from, moments, moment_count, stride,
-                                                 to);
+void ring(const Modes& modes, const double* input, int frames, double* re, double* im, double* out) noexcept {
+  (is_wide ? wide::ring : plain::ring)(modes, input, frames, re, im, out);
+}
+
+void turn(const TurnInput& input, int frames, double* work, double* state, double* out) noexcept {
+  (is_wide ? wide::turn : plain::turn)(input, frames, work, state, out);
 }
 
 }  // namespace unsoldered

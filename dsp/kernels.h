@@ -4,19 +4,49 @@
 
 namespace unsoldered {
 
-/// out = a + share (b - a).
-void mix(const double* a, const double* b, double share, double* out, int count) noexcept;
+/// Where the parts of a row of a step table lie; columns of matrices are contiguous and padded to a multiple of four.
+struct RowLayout {
+  int states = 0;
+  int padded = 0;
+  int transition = 0;    // padded x states
+  int first_drive = 0;   // padded x moments
+  int second_drive = 0;  // padded x moments
+  int output = 0;        // padded
+  int direct = 0;        // 1
+  int size = 0;          // of a row, a multiple of four
+};
 
-/// See Interpolator::process. weights[p * taps + k]; taps <= 64; even moments have weights even in k, odd ones odd.
+/// See Interpolator::process. weights[p * taps + k], taps <= 64; even moments have weights even in k, odd ones odd. Works in
+/// sixteens: input and out must be readable and writable up to the next multiple of 16 frames.
 void interval_moments(const double* input, int frames, const double* weights, int taps, int moments, double* out,
                       int stride) noexcept;
 
 /// out[n] = sum over k of response[k] input[n - k].
 void convolve(const double* input, int frames, const double* response, int taps, double* out) noexcept;
 
-/// to = transition from + drive moments: columns of `padded` numbers, moments[p * stride]. padded is a multiple of four,
-/// at most 64; `to` may not be `from`.
-void half_step(const double* transition, const double* drive, int states, int padded, const double* from,
-               const double* moments, int moment_count, int stride, double* to) noexcept;
+/// Adds the real part of `modes` complex one-pole filters, all driven by input: q' = pole q + residue input, out += Re q.
+/// `modes` is a multiple of four; re and im hold q between calls, the output comes before the new input enters.
+struct Modes {
+  const double* pole_re;
+  const double* pole_im;
+  const double* residue_re;
+  const double* residue_im;
+  int count;
+};
+void ring(const Modes& modes, const double* input, int frames, double* re, double* im, double* out) noexcept;
+
+/// One channel of a moving-pot filter. positions[n] is the table row (its fraction: share of the next) at the end of sample
+/// n, positions[-1] that at the start of the first. moments[p * stride + n], direct_input[n]. work: two rows and one state.
+/// state[padded] is kept between calls. out[n] = output of the state at the end of sample n.
+struct TurnInput {
+  const double* table;
+  RowLayout layout;
+  int moments;
+  const double* positions;
+  const double* interval_moments;
+  int stride;
+  const double* direct_input;
+};
+void turn(const TurnInput& input, int frames, double* work, double* state, double* out) noexcept;
 
 }  // namespace unsoldered

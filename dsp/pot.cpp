@@ -33,8 +33,9 @@ Taper law_from_half_reading(const Pot& pot, double half_ohm, bool exponential) {
   }
   const double x = electrical_travel(pot, 5);
   if (!(x > 0 && x < 1)) {
-    throw InputError("the dead travel covers the middle of the travel, so a reading there says nothing about the law; "
-                     "measure elsewhere and give sections");
+    throw InputError(
+        "the dead travel covers the middle of the travel, so a reading there says nothing about the law; "
+        "measure elsewhere and give sections");
   }
   const TaperPoint through{x, (half_ohm - low_ohm) / (high_ohm - low_ohm)};
   return exponential ? Taper::exponential_through(through) : Taper::two_sections(through);

@@ -29,9 +29,10 @@ double electrical_travel(const Pot& pot, double dial) noexcept;
 /// RB / RT, end resistance included: the share of the total below the wiper. Safe in the audio callback.
 double element_fraction(const Pot& pot, double dial) noexcept;
 
-/// The law that an ohmmeter reading between bottom lug and wiper at dial 5 implies: two straight sections through it, or, with
-/// `exponential`, the exponential law. Uses the total, the travel and the end resistance of `pot`, not its taper.
-/// Throws InputError when the reading does not lie between the ends of the element, or dial 5 lies in dead travel.
+/// The law that an ohmmeter reading between bottom lug and wiper at dial 5 implies: two straight sections through it,
+/// or, with `exponential`, the exponential law. Uses the total, the travel and the end resistance of `pot`, not its
+/// taper. Throws InputError when the reading does not lie between the ends of the element, or dial 5 lies in dead
+/// travel.
 Taper law_from_half_reading(const Pot& pot, double half_ohm, bool exponential);
 
 }  // namespace unsoldered

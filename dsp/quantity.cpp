@@ -99,8 +99,6 @@ UnitTraits traits_of(Unit unit) {
 
 bool is_digit(char c) { return c >= '0' && c <= '9'; }
 
-
-
 /// Control characters are shown as '?', so that a message cannot drive the terminal; overlong text is cut.
 std::string shown(std::string_view text) {
   std::string out = "\"";
@@ -244,7 +242,8 @@ std::size_t number_length(std::string_view text) {
   return at;
 }
 
-/// The code with a letter in place of the decimal point (IEC 60062): "4k7", "R47", "n47", "2H5". Empty when it is not one.
+/// The code with a letter in place of the decimal point (IEC 60062): "4k7", "R47", "n47", "2H5". Empty when it is not
+/// one.
 std::optional<double> letter_code(std::string_view text, Unit unit) {
   const UnitTraits traits = traits_of(unit);
   if (unit == Unit::metre) {
@@ -456,7 +455,8 @@ double parse_quantity(std::string_view text, Unit unit, Range range) {
   const double value = parse_quantity(text, unit);
   if (!(value >= range.low && value <= range.high)) {
     throw InputError(shown(text) + " (" + format_quantity(value, unit) + ") is out of range; accepted is " +
-                     format_quantity(range.low, unit) + " to " + format_quantity(range.high, unit));
+                     format_quantity(range.low, unit) + " to " + format_quantity(range.high, unit) +
+                     "; check the figure and its prefix");
   }
   return value;
 }

@@ -3,21 +3,35 @@
 #include <algorithm>
 #include <cmath>
 #include <numbers>
+#include <string>
 
 #include "dsp/error.h"
 #include "dsp/exact_step.h"
 #include "dsp/hookup_network.h"
-#include "dsp/kernels.h"
+#include "dsp/interpolator.h"
 
 namespace unsoldered {
 namespace {
 
-constexpr int rows = 1024;
+constexpr int row_count = 1024;
+constexpr int most_states = 64;  // of the kernel's work space
 
 std::size_t moving_pot(const Network& network, Knob knob) {
   for (std::size_t i = 0; i < network.pots.size(); ++i)
     if (network.pots[i].knob == knob) return i;
   throw InputError("this hookup has no tone knob to turn; add a [tone] block or turn the volume");
+}
+
+RowLayout row_layout(int states) {
+  RowLayout layout;
+  layout.states = states;
+  layout.padded = (states + 3) / 4 * 4;
+  layout.first_drive = layout.padded * states;
+  layout.second_drive = layout.first_drive + layout.padded * Interpolator::moments;
+  layout.output = layout.second_drive + layout.padded * Interpolator::moments;
+  layout.direct = layout.output + layout.padded;
+  layout.size = (layout.direct + 1 + 3) / 4 * 4;
+  return layout;
 }
 
 void write_row(const StateSpace& space, double rate_hz, const RowLayout& layout, double* row) {
@@ -37,19 +51,15 @@ void write_row(const StateSpace& space, double rate_hz, const RowLayout& layout,
 
 }  // namespace
 
-RowLayout::RowLayout(int state_count) : states(state_count), padded((state_count + 3) / 4 * 4) {
-  first_drive = transition + padded * states;
-  second_drive = first_drive + padded * Interpolator::moments;
-  output = second_drive + padded * Interpolator::moments;
-  direct = output + padded;
-  size = (direct + 1 + 3) / 4 * 4;
-}
-
-StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : layout_(0), rows_(rows) {
+StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(row_count) {
   const Network network = hookup_network(hookup);
   const std::size_t moving = moving_pot(network, knob);
   const StateSpaceFamily family(network, moving);
-  layout_ = RowLayout(family.states());
+  if (family.states() > most_states)
+    throw InputError("this hookup stores energy in " + std::to_string(family.states()) +
+                     " independent ways; a turning knob is computed for up to " + std::to_string(most_states) +
+                     ": leave out extra capacitors and inductors");
+  layout_ = row_layout(family.states());
   pot_ = network.pots[moving].pot;
   open_at_ten_ = network.pots[moving].open_at_ten;
   const auto size = static_cast<std::size_t>(layout_.size);
@@ -69,12 +79,6 @@ double StepTable::position(double dial) const noexcept {
   if (open_at_ten_ && dial >= 10) return rows_;
   const double fraction = std::clamp(element_fraction(pot_, dial), 0.0, 1.0);
   return std::acos(1 - 2 * fraction) * (rows_ - 1) / std::numbers::pi;
-}
-
-void StepTable::row_at(double position, double* row) const noexcept {
-  const auto below = static_cast<std::size_t>(position);
-  const double* lower = data_.data() + below * static_cast<std::size_t>(layout_.size);
-  mix(lower, lower + layout_.size, position - static_cast<double>(below), row, layout_.size);
 }
 
 }  // namespace unsoldered

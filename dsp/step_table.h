@@ -9,23 +9,9 @@
 #include <vector>
 
 #include "dsp/hookup.h"
-#include "dsp/interpolator.h"
+#include "dsp/kernels.h"
 
 namespace unsoldered {
-
-/// Where the parts of a row lie; columns of matrices are contiguous, padded to an even number of states.
-struct RowLayout {
-  int states = 0;
-  int padded = 0;
-  int transition = 0;
-  int first_drive = 0;
-  int second_drive = 0;
-  int output = 0;
-  int direct = 0;
-  int size = 0;
-
-  explicit RowLayout(int state_count);
-};
 
 class StepTable {
  public:
@@ -37,8 +23,8 @@ class StepTable {
   /// Row number, with the share of the next row as its fraction, of a dial 0..10. Audio thread.
   double position(double dial) const noexcept;
 
-  /// The row at a position, written to row[0..layout().size-1]. Audio thread.
-  void row_at(double position, double* row) const noexcept;
+  /// All rows, layout().size numbers each, one row past the last position. Audio thread.
+  const double* rows() const noexcept { return data_.data(); }
 
  private:
   RowLayout layout_;

@@ -16,7 +16,8 @@ namespace {
 constexpr std::string_view kNames =
     "\"linear\", \"audio N%\", \"ideal audio N%\", \"reverse audio N%\", \"ideal reverse audio N%\" (N from 1 to 49)";
 
-constexpr double kLeastStep = 1e-9;  // of travel between corners; a real element has none closer, and no slope overflows
+constexpr double kLeastStep =
+    1e-9;  // of travel between corners; a real element has none closer, and no slope overflows
 
 struct Sections {
   std::vector<TaperPoint> points;
@@ -56,7 +57,8 @@ std::string sections_name(const std::vector<TaperPoint>& points) {
 
 void check_points(const std::vector<TaperPoint>& points) {
   const auto refuse = [&](const std::string& why) {
-    throw InputError(why + "; a law is a list of [travel, share] corners from [0, 0] to [1, 1], travel rising from corner "
+    throw InputError(why +
+                     "; a law is a list of [travel, share] corners from [0, 0] to [1, 1], travel rising from corner "
                      "to corner and share never falling");
   };
   if (points.size() < 2) {
@@ -116,8 +118,8 @@ double share_at(const MonotoneCubic& law, double x) noexcept {
   const double t = (x - a.x) / h;
   const double u = 1 - t;
   // Cubic Hermite basis, any numerical analysis text.
-  const double value = a.r * u * u * (1 + 2 * t) + b.r * t * t * (3 - 2 * t) +
-                       h * t * u * (law.slopes[i] * u - law.slopes[i + 1] * t);
+  const double value =
+      a.r * u * u * (1 + 2 * t) + b.r * t * t * (3 - 2 * t) + h * t * u * (law.slopes[i] * u - law.slopes[i + 1] * t);
   return std::clamp(value, a.r, b.r);  // monotone up to rounding; the clamp takes the rounding too
 }
 
@@ -153,8 +155,7 @@ std::vector<double> monotone_slopes(const std::vector<TaperPoint>& points) {
     }
   }
   slopes.front() = end_slope(widths[0], widths[1], secants[0], secants[1]);
-  slopes.back() =
-      end_slope(widths[sections - 1], widths[sections - 2], secants[sections - 1], secants[sections - 2]);
+  slopes.back() = end_slope(widths[sections - 1], widths[sections - 2], secants[sections - 1], secants[sections - 2]);
   return slopes;
 }
 
@@ -228,7 +229,8 @@ double parse_mid_percent(const std::string& text, std::string_view whole) {
                      std::string(kNames));
   }
   if (!(value >= 1 && value <= 49)) {
-    throw InputError(shown(whole) + ": " + decimal(value) + " % at half travel is out of range; accepted is 1 % to 49 %");
+    throw InputError(shown(whole) + ": " + decimal(value) +
+                     " % at half travel is out of range; accepted is 1 % to 49 %");
   }
   return value;
 }
@@ -254,7 +256,8 @@ Taper Taper::two_sections(TaperPoint through) { return sections({{0, 0}, through
 
 Taper Taper::exponential(double mid_share) {
   if (!(mid_share > 0 && mid_share < 1)) {
-    throw InputError("share " + decimal(mid_share) + " at half travel is out of range; accepted is above 0 and below 1");
+    throw InputError("share " + decimal(mid_share) +
+                     " at half travel is out of range; accepted is above 0 and below 1");
   }
   return Taper(std::make_shared<const Law>(Law{Exponential{log_b_for_mid(mid_share)}, exponential_name(mid_share)}));
 }
@@ -326,11 +329,12 @@ const std::string& Taper::name() const noexcept { return law_->name; }
 
 Taper parse_taper(std::string_view text) {
   if (is_taper_letter(text)) {
-    throw InputError(shown(text) +
-                     " gives the law by a letter, and conventions disagree: A is audio on most current parts but linear "
-                     "in older European codes, B the other way round. Write the law by name (" +
-                     std::string(kNames) +
-                     "), or measure between the bottom lug and the wiper at half travel and give measured_half");
+    throw InputError(
+        shown(text) +
+        " gives the law by a letter, and conventions disagree: A is audio on most current parts but linear "
+        "in older European codes, B the other way round. Write the law by name (" +
+        std::string(kNames) +
+        "), or measure between the bottom lug and the wiper at half travel and give measured_half");
   }
   std::string rest = normal_form(text);
   if (rest == "linear") {
@@ -350,8 +354,8 @@ Taper parse_taper(std::string_view text) {
     if (reverse) {
       law = Taper::reversed(law);
     }
-    return law.named(std::string(ideal ? "ideal " : "") + (reverse ? "reverse " : "") + "audio " + decimal(mid_percent) +
-                     "%");
+    return law.named(std::string(ideal ? "ideal " : "") + (reverse ? "reverse " : "") + "audio " +
+                     decimal(mid_percent) + "%");
   }
   const bool log_word = rest.rfind("log", 0) == 0 || rest.rfind("antilog", 0) == 0 || rest.rfind("exp", 0) == 0;
   throw InputError(shown(text) + " is not the name of a law; accepted are " + std::string(kNames) +

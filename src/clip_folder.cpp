@@ -47,6 +47,7 @@ ClipFolder::ClipFolder(fs::path folder, std::vector<std::string> names, bool for
 }
 
 void ClipFolder::check(const std::vector<fs::path>& inputs) const {
+  if (folder_.empty()) throw InputError("--out: the name is empty; give a folder for the clips, it may be a new one");
   std::set<std::string> seen;
   for (const std::string& name : names_) {
     if (name.size() > kLongestName) {

@@ -5,6 +5,8 @@
 #include <string>
 #include <vector>
 
+#include "src/table_text.h"
+
 namespace unsoldered {
 
 struct ClipRow {
@@ -15,10 +17,7 @@ struct ClipRow {
   double peak_dbfs = 0;        // sample peak as written; -infinity for digital silence
 };
 
-/// Header and one line a clip: file,hookup,dial,gain_db,peak_dbfs,peak_dbtp,loudness_lufs. Not measured: empty.
-std::string clips_csv(const std::vector<ClipRow>& clips);
-
-/// An array of objects with the same names. Not measured, and the level of silence: null.
-std::string clips_json(const std::vector<ClipRow>& clips);
+/// Columns file, hookup, dial, gain_db, peak_dbfs, peak_dbtp, loudness_lufs; what was not measured is empty.
+Table clip_table(const std::vector<ClipRow>& clips);
 
 }  // namespace unsoldered

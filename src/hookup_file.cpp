@@ -42,8 +42,8 @@ std::optional<double> shunt_or_none(const TomlBlock& block, std::string_view key
 }
 
 Source read_source(const TomlBlock& block) {
-  const std::vector<std::string_view> every_kind = {"kind",            "inductance",      "resistance", "capacitance",
-                                                    "loss_resistance", "leak_resistance", "tolerance"};
+  const std::vector<std::string_view> every_kind = {
+      "kind", "inductance", "resistance", "capacitance", "loss_resistance", "leak_resistance", "tolerance"};
   block.allow_only(every_kind);
   Source source;
   switch (block.choice("kind", {"pickup", "line", "piezo"})) {
@@ -55,9 +55,10 @@ Source read_source(const TomlBlock& block) {
       source.resistance_ohm = block.quantity("resistance", Unit::ohm, kResistance);
       source.capacitance_f = block.quantity("capacitance", Unit::farad, kStray);
       if (!block.has("loss_resistance")) {
-        block.refuse_missing("loss_resistance",
-                             "the eddy-current loss of a pickup as a resistance across it, from 1 ohm to 100G (100k to 1M are "
-                             "common), or \"none\" written out");
+        block.refuse_missing(
+            "loss_resistance",
+            "the eddy-current loss of a pickup as a resistance across it, from 1 ohm to 100G (100k to 1M are "
+            "common), or \"none\" written out");
       }
       source.loss_ohm = shunt_or_none(block, "loss_resistance");
       break;
@@ -83,7 +84,8 @@ Volume read_volume(const TomlBlock& block, const std::filesystem::path& folder) 
   block.allow_only(with({"resistance", "source_on"}, pot_keys()), {"right"}, kLater);
   Volume volume;
   volume.pot = read_pot(block, "resistance", folder);
-  volume.source_on = block.optional_choice("source_on", {"top", "wiper"}).value_or(0) == 0 ? SourceOn::top : SourceOn::wiper;
+  volume.source_on =
+      block.optional_choice("source_on", {"top", "wiper"}).value_or(0) == 0 ? SourceOn::top : SourceOn::wiper;
   return volume;
 }
 
@@ -102,8 +104,8 @@ Tone read_tone(const TomlBlock& block, const std::filesystem::path& folder) {
   Tone tone;
   tone.pot = read_pot(block, "resistance", folder);
   tone.capacitor_f = block.quantity("capacitor", Unit::farad, kCapacitor);
-  tone.position =
-      block.optional_choice("position", {"source", "output"}).value_or(0) == 0 ? TonePosition::source : TonePosition::output;
+  tone.position = block.optional_choice("position", {"source", "output"}).value_or(0) == 0 ? TonePosition::source
+                                                                                           : TonePosition::output;
   tone.dial = block.optional_number("dial", kDial).value_or(10);
   tone.no_load = block.optional_flag("no_load").value_or(false);
   return tone;
@@ -135,14 +137,16 @@ Cable read_cable(const TomlBlock& block) {
   const std::optional<double> length_m = block.optional_quantity("length", Unit::metre, kLength);
   const std::optional<double> per_metre_f = read_per_metre(block);
   if (total_f && (length_m || per_metre_f)) {
-    block.refuse("capacitance", "the capacitance of the whole cable is given, and a length or a capacitance per metre as "
-                                "well; keep one of the two ways");
+    block.refuse("capacitance",
+                 "the capacitance of the whole cable is given, and a length or a capacitance per metre as "
+                 "well; keep one of the two ways");
   }
   if (total_f) {
     cable.capacitance_f = *total_f;
   } else if (!length_m) {
-    block.refuse_missing("length", "a length from 0 m to 1000 m with capacitance_per_metre, or capacitance = \"680 pF\" as read "
-                                   "on a meter");
+    block.refuse_missing("length",
+                         "a length from 0 m to 1000 m with capacitance_per_metre, or capacitance = \"680 pF\" as read "
+                         "on a meter");
   } else if (!per_metre_f) {
     block.refuse_missing("capacitance_per_metre", "it goes with length; \"100 pF\" is common for instrument cable");
   } else {
@@ -258,7 +262,8 @@ Hookup read_blocks(const TomlDocument& document, const std::filesystem::path& fo
                   {"second", "selector", "blend", "then"}, kLater);
   Hookup hookup;
   hookup.title = root.optional_text("title").value_or("");
-  hookup.source = read_source(root.block("source", "[source] with kind = \"pickup\", \"line\" or \"piezo\" and its values"));
+  hookup.source =
+      read_source(root.block("source", "[source] with kind = \"pickup\", \"line\" or \"piezo\" and its values"));
   hookup.volume = read_volume(root.block("volume", "[volume] with resistance and taper"), folder);
   if (const std::optional<TomlBlock> block = root.optional_block("treble_bleed")) {
     hookup.treble_bleed = read_treble_bleed(*block);

@@ -16,7 +16,8 @@ namespace {
 constexpr std::size_t kMostPoints = 10000;
 
 [[noreturn]] void refuse(const std::string& place, const std::string& why) {
-  throw InputError(place + ": " + why + "; wanted are lines \"travel,share\", travel 0 to 1, share 0 to 1 or readings in ohm");
+  throw InputError(place + ": " + why +
+                   "; wanted are lines \"travel,share\", travel 0 to 1, share 0 to 1 or readings in ohm");
 }
 
 std::optional<double> reading(std::string_view text) {
@@ -37,10 +38,11 @@ std::optional<TaperPoint> parse_line(std::string_view line, bool may_be_header, 
     return std::nullopt;
   }
   const std::size_t comma = bare.find(',');
-  if (bare.find(';') != std::string_view::npos || bare.find(',', comma + (comma == std::string_view::npos ? 0 : 1)) !=
-                                                      std::string_view::npos) {
-    refuse(place, in_quotes(bare) + " has more than one separator (the decimal sign is a point, columns are separated by a "
-                                    "comma)");
+  if (bare.find(';') != std::string_view::npos ||
+      bare.find(',', comma + (comma == std::string_view::npos ? 0 : 1)) != std::string_view::npos) {
+    refuse(place, in_quotes(bare) +
+                      " has more than one separator (the decimal sign is a point, columns are separated by a "
+                      "comma)");
   }
   if (comma == std::string_view::npos) {
     refuse(place, in_quotes(bare) + " is one column");
@@ -103,7 +105,8 @@ Taper read_measured_taper(const std::filesystem::path& folder, const std::string
   const auto leaves = [&](const std::filesystem::path& path) {
     return path.is_absolute() || std::find(path.begin(), path.end(), "..") != path.end();
   };
-  const std::string why = in_quotes(file) + " leads out of the folder of the hookup file; put the measurement beside it";
+  const std::string why =
+      in_quotes(file) + " leads out of the folder of the hookup file; put the measurement beside it";
   if (file.empty()) {
     throw InputError("no file is named; give a CSV file in the folder of the hookup file");
   }

@@ -16,7 +16,8 @@ constexpr NumberRange kTravel{10, 3600, "degrees"};
 constexpr NumberRange kDeadTravel{0, 3600, "degrees"};
 constexpr NumberRange kShare{0, 1, ""};
 constexpr std::string_view kTaperForms =
-    "\"linear\", \"audio 15%\" (N from 1 to 49, also ideal, reverse, ideal reverse), { sections = [[0,0], …, [1,1]] } or "
+    "\"linear\", \"audio 15%\" (N from 1 to 49, also ideal, reverse, ideal reverse), { sections = [[0,0], …, [1,1]] } "
+    "or "
     "{ measured = \"file.csv\" }";
 
 std::vector<TaperPoint> read_sections(const TomlBlock& block) {
@@ -30,10 +31,11 @@ std::vector<TaperPoint> read_sections(const TomlBlock& block) {
   for (const toml::node& entry : *list) {
     const toml::array* pair = entry.as_array();
     if (pair == nullptr || pair->size() != 2) {
-      block.refuse("sections", "entry " + std::to_string(points.size() + 1) + " is not a pair; wanted is " +
-                                   std::string(wanted));
+      block.refuse("sections",
+                   "entry " + std::to_string(points.size() + 1) + " is not a pair; wanted is " + std::string(wanted));
     }
-    points.push_back({block.number_of("sections", (*pair)[0], kShare), block.number_of("sections", (*pair)[1], kShare)});
+    points.push_back(
+        {block.number_of("sections", (*pair)[0], kShare), block.number_of("sections", (*pair)[1], kShare)});
   }
   return points;
 }
@@ -61,8 +63,9 @@ Taper read_taper_table(const TomlBlock& block, const std::filesystem::path& fold
 Taper read_taper(const TomlBlock& block, const std::filesystem::path& folder) {
   const toml::node* value = block.find("taper");
   if (value == nullptr) {
-    block.refuse_missing("taper", std::string(kTaperForms) + "; or give measured_half, the reading between bottom lug and "
-                                                             "wiper with the knob at 5");
+    block.refuse_missing("taper", std::string(kTaperForms) +
+                                      "; or give measured_half, the reading between bottom lug and "
+                                      "wiper with the knob at 5");
   }
   if (value->is_table()) {
     return read_taper_table(*block.optional_block("taper"), folder);
@@ -77,7 +80,8 @@ Taper read_taper(const TomlBlock& block, const std::filesystem::path& folder) {
   }
 }
 
-/// The law through the reading. A name beside it only says whether the law is meant to be exponential; a letter says nothing.
+/// The law through the reading. A name beside it only says whether the law is meant to be exponential; a letter says
+/// nothing.
 Taper read_law_through_half(const TomlBlock& block, const Pot& pot, double half_ohm) {
   bool exponential = false;
   if (const toml::node* value = block.find("taper")) {
@@ -111,8 +115,9 @@ void read_dead_travel(const TomlBlock& block, Pot& pot) {
     pot.dead_cw_deg = pot.dead_ccw_deg;
   } else {
     if (ends->size() != 2) {
-      block.refuse("dead_travel", "the list has " + std::to_string(ends->size()) +
-                                      " entries; wanted are two, for the end at 0 and the end at 10, or one number for both");
+      block.refuse("dead_travel",
+                   "the list has " + std::to_string(ends->size()) +
+                       " entries; wanted are two, for the end at 0 and the end at 10, or one number for both");
     }
     pot.dead_ccw_deg = block.number_of("dead_travel", (*ends)[0], kDeadTravel);
     pot.dead_cw_deg = block.number_of("dead_travel", (*ends)[1], kDeadTravel);
@@ -133,14 +138,16 @@ Pot read_pot(const TomlBlock& block, std::string_view total_key, const std::file
   const std::optional<double> nominal_ohm = block.optional_quantity(total_key, Unit::ohm, kTotal);
   const std::optional<double> measured_ohm = block.optional_quantity("measured_total", Unit::ohm, kTotal);
   if (!nominal_ohm && !measured_ohm) {
-    block.refuse_missing(total_key, "the total, from 10 ohm to 100M, as in \"500k\"; or measured_total, as read on a meter");
+    block.refuse_missing(total_key,
+                         "the total, from 10 ohm to 100M, as in \"500k\"; or measured_total, as read on a meter");
   }
   pot.total_ohm = measured_ohm ? *measured_ohm : *nominal_ohm;
   pot.travel_deg = block.optional_number("travel", kTravel).value_or(pot.travel_deg);
   read_dead_travel(block, pot);
   pot.end_ohm = block.optional_quantity("end_resistance", Unit::ohm, kEnd).value_or(0);
   if (!(2 * pot.end_ohm < pot.total_ohm)) {
-    block.refuse("end_resistance", format_quantity(pot.end_ohm, Unit::ohm) + " at each end leaves nothing of the total " +
+    block.refuse("end_resistance", format_quantity(pot.end_ohm, Unit::ohm) +
+                                       " at each end leaves nothing of the total " +
                                        format_quantity(pot.total_ohm, Unit::ohm) + "; accepted is below half of it");
   }
   pot.tolerance = block.tolerance();

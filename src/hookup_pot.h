@@ -13,8 +13,8 @@ namespace unsoldered {
 /// The keys `read_pot` reads, apart from the one for the total resistance.
 std::vector<std::string_view> pot_keys();
 
-/// `total_key` is "resistance", or "value" in an extra part. `measured_total` stands in for the total; `measured_half` beats
-/// the name of the law. A measured taper's CSV is looked for in `folder`. Throws InputError.
+/// `total_key` is "resistance", or "value" in an extra part. `measured_total` stands in for the total; `measured_half`
+/// beats the name of the law. A measured taper's CSV is looked for in `folder`. Throws InputError.
 Pot read_pot(const TomlBlock& block, std::string_view total_key, const std::filesystem::path& folder);
 
 }  // namespace unsoldered

@@ -151,7 +151,7 @@ RenderResult render(const RenderRequest& request, Progress& progress) {
     result.messages.push_back("all clips are lowered by " + format_number(std::round(-10 * level_db(gain)) / 10) +
                               " dB, so that the loudest peaks at -1 dBFS (--depth float needs no such room)");
   }
-  folder.write(clips.size(), clips_csv(result.clips));
+  folder.write(clips.size(), csv_text(clip_table(result.clips)));
   stop_if_interrupted();
   folder.publish();
   return result;

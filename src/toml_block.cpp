@@ -184,7 +184,8 @@ std::optional<std::string> TomlBlock::optional_text(std::string_view key) const 
     refuse_type(key, *value, "text in double quotes");
   }
   const std::string& content = text->get();
-  if (std::any_of(content.begin(), content.end(), [](char c) { return static_cast<unsigned char>(c) < 0x20 || c == 0x7f; })) {
+  if (std::any_of(content.begin(), content.end(),
+                  [](char c) { return static_cast<unsigned char>(c) < 0x20 || c == 0x7f; })) {
     refuse(key, in_quotes(content) + " has a line end or another control character; write it in one plain line");
   }
   return content;
@@ -245,8 +246,10 @@ std::optional<TomlBlock> TomlBlock::optional_block(std::string_view key) const {
     return TomlBlock(*document_, *table, dotted(key));
   }
   if (value->is_string()) {
-    refuse(key, shown(*value) + " stands for a catalogue entry, which this version does not look up; write the block "
-                "itself, starting with [" + dotted(key) + "]");
+    refuse(key, shown(*value) +
+                    " stands for a catalogue entry, which this version does not look up; write the block "
+                    "itself, starting with [" +
+                    dotted(key) + "]");
   }
   refuse_type(key, *value, "a block that starts with [" + dotted(key) + "]");
 }

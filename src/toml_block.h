@@ -30,7 +30,8 @@ class TomlBlock {
   /// "volume.taper": the dotted key from the root of the document.
   std::string dotted(std::string_view key) const;
 
-  /// Refuses every key that is not among `keys`, naming the nearest and the list; for the keys in `misplaced` it says `reason`.
+  /// Refuses every key that is not among `keys`, naming the nearest and the list; for the keys in `misplaced` it says
+  /// `reason`.
   void allow_only(const std::vector<std::string_view>& keys, const std::vector<std::string_view>& misplaced = {},
                   std::string_view reason = {}) const;
 

@@ -17,47 +17,27 @@ namespace unsoldered {
 namespace {
 
 constexpr std::size_t kLargestFile = std::size_t{1} << 20;
-constexpr int kDeepestBrackets = 24;
-constexpr int kLongestKeyChain = 24;
+constexpr int kLongestKeyChain = 32;
 constexpr std::string_view kSettingPlace = "--set ";
 
-/// Line of the first place where brackets nest, or dotted keys chain, deeper than any of our files needs; 0 when there is none.
-/// Parsed tables are taken down by recursion, so a file made to be deep would otherwise run out of stack. Looks at the bare
-/// text: brackets in strings count as well, which no sensible title comes near.
+/// Line of the first dotted key that chains deeper than any of our files needs; 0 when there is none. Parsed tables are
+/// taken down by recursion, so a file made to be deep would otherwise run out of stack; nested brackets the parser
+/// bounds itself (256, so a parsed table is at most some 8000 levels deep, well under a megabyte of stack). Looks at
+/// the bare text: dots in a sentence count as well, up to its next comma, bracket or line end.
 std::size_t too_deep_at(std::string_view text) {
+  constexpr std::string_view ends_a_key = "\n[]{}=,#";
   std::size_t line = 1;
-  int brackets = 0;
   int chain = 0;
   char before = '\0';
   for (char c : text) {
-    switch (c) {
-      case '\n':
-        ++line;
-        chain = 0;
-        break;
-      case '[':
-      case '{':
-        ++brackets;
-        chain = 0;
-        break;
-      case ']':
-      case '}':
-        brackets = std::max(0, brackets - 1);
-        chain = 0;
-        break;
-      case '=':
-      case ',':
-      case '#':
-        chain = 0;
-        break;
-      case '.':
-        chain += before == '.' ? 0 : 1;  // "..." is prose, never a key
-        break;
-      default:
-        break;
+    line += c == '\n' ? 1 : 0;
+    if (ends_a_key.find(c) != std::string_view::npos) {
+      chain = 0;
+    } else if (c == '.' && before != '.') {  // "..." is prose, never a key
+      ++chain;
     }
     before = c;
-    if (brackets > kDeepestBrackets || chain > kLongestKeyChain) {
+    if (chain > kLongestKeyChain) {
       return line;
     }
   }
@@ -67,7 +47,7 @@ std::size_t too_deep_at(std::string_view text) {
 toml::table parse_table(std::string_view text, const std::string& source_name, std::string_view shown_name) {
   if (const std::size_t line = too_deep_at(text)) {
     throw InputError(std::string(shown_name) + ":" + std::to_string(line) +
-                     ": brackets or dotted keys are nested deeper than 24; no file of ours needs that, write it flat");
+                     ": more than 32 dots in one key or sentence; no file of ours nests that deep, shorten it");
   }
   return toml::parse(text, source_name);
 }
@@ -147,7 +127,8 @@ toml::table parse_setting_value(std::string_view value, const std::string& place
   throw InputError(place + ": the value is not valid UTF-8 text; write it in UTF-8");
 }
 
-/// Walks one part down from `parent`, making the empty table or array that is missing. Null when the part cannot be there.
+/// Walks one part down from `parent`, making the empty table or array that is missing. Null when the part cannot be
+/// there.
 toml::node* step(toml::node& parent, const std::string& part, bool next_is_index, const std::string& place) {
   const auto make = [&]() { return parse_value(next_is_index ? "[]" : "{}", place); };
   if (toml::table* table = parent.as_table()) {
@@ -268,8 +249,9 @@ void apply_setting(TomlDocument& document, const std::string& setting) {
   for (std::size_t i = 0; i + 1 < parts.size(); ++i) {
     toml::node* next = step(*at, parts[i], as_index(parts[i + 1]).has_value(), place);
     if (next == nullptr) {
-      throw InputError(place + ": there is no " + in_quotes(parts[i]) + " there; " +
-                       (at->is_array() ? "entries are counted from 0" : "the key before it holds a value, not a table"));
+      throw InputError(
+          place + ": there is no " + in_quotes(parts[i]) + " there; " +
+          (at->is_array() ? "entries are counted from 0" : "the key before it holds a value, not a table"));
     }
     at = next;
   }

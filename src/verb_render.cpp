@@ -87,8 +87,7 @@ void run(const RenderOptions& options, const CLI::Option& jobs) {
     result = render(request, progress);
   }
   for (const std::string& message : result.messages) std::cerr << "unsoldered render: " << message << '\n';
-  std::cout << (options.json ? clips_json(result.clips) : clips_csv(result.clips)) << std::flush;
-  if (!std::cout) throw CannotError("standard output cannot be written; the clips are complete in '" + options.folder + "'");
+  print_table(clip_table(result.clips), options.json);
 }
 
 }  // namespace
@@ -99,7 +98,7 @@ void add_render_verb(CLI::App& app, VerbAction& action) {
       "render", "Plays a take through hookups and writes what comes out: one clip for every hookup and dial position");
   verb->add_option("TAKE", options->take, "WAV or FLAC file, or the word built-in for a phrase of plucked strings")
       ->required();
-  verb->add_option("--hookup", options->hookups, "Hookup files; may be repeated")->required()->type_name("FILE ...");
+  verb->add_option("--hookup", options->hookups, "Hookup files; may be repeated")->required()->type_name("FILE");
   verb->add_option("--dial", options->dials, "Knob positions 0 to 10, a clip for each (default 10)")
       ->allow_extra_args(false)
       ->type_name("10,7,3");

@@ -30,8 +30,8 @@ TEST_CASE("300 degrees with 15 dead at each end: electrical travel at seven posi
   pot.dead_ccw_deg = 15;
   pot.dead_cw_deg = 15;
   // Calculated: (degrees - 15)/270, held at the ends; 1e-6.
-  const std::vector<std::pair<double, double>> rows = {{0, 0},          {15, 0},         {60, 0.166667}, {150, 0.5},
-                                                       {240, 0.833333}, {285, 1},        {300, 1}};
+  const std::vector<std::pair<double, double>> rows = {{0, 0},          {15, 0},  {60, 0.166667}, {150, 0.5},
+                                                       {240, 0.833333}, {285, 1}, {300, 1}};
   for (const auto& [deg, x] : rows) {
     CAPTURE(deg);
     const double dial = deg / 30;
@@ -81,7 +81,8 @@ TEST_CASE("A reading at half travel comes back from the law it makes") {
       CHECK_THAT(element_fraction(pot, 5) * pot.total_ohm, WithinAbs(58e3, 1e-6));
       CHECK_THAT(element_fraction(pot, 0) * pot.total_ohm, WithinAbs(40, 1e-6));
       const double quarter = pot.taper.share(0.25);
-      CHECK((exponential ? quarter < 0.06 : quarter > 0.06));  // the exponential law starts slower than straight sections
+      CHECK(
+          (exponential ? quarter < 0.06 : quarter > 0.06));  // the exponential law starts slower than straight sections
     }
   }
 }
@@ -92,7 +93,8 @@ TEST_CASE("A reading that no element gives is refused") {
   for (double half_ohm : {0.0, 40.0, 463e3, 463e3 - 40, 1e6, std::numeric_limits<double>::quiet_NaN()}) {
     CHECK_THROWS_AS(unsoldered::law_from_half_reading(pot, half_ohm, false), InputError);
   }
-  CHECK_THROWS_WITH(unsoldered::law_from_half_reading(pot, 1e6, false), ContainsSubstring("1M") && ContainsSubstring("knob at 5"));
+  CHECK_THROWS_WITH(unsoldered::law_from_half_reading(pot, 1e6, false),
+                    ContainsSubstring("1M") && ContainsSubstring("knob at 5"));
   pot.dead_ccw_deg = 160;
   CHECK_THROWS_WITH(unsoldered::law_from_half_reading(pot, 58e3, false), ContainsSubstring("dead travel"));
 }

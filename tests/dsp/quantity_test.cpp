@@ -119,10 +119,40 @@ TEST_CASE("M is mega and m is milli") {
 }
 
 TEST_CASE("What is no value of the unit is refused") {
-  check_refused({"", " ", "5 F", "22n", "470p", "2.4 H", "5 Hz", "4,7k", "-5k", "\xE2\x88\x92"
-                                                                             "5k",
-                 "inf", "nan", "infinity", "1e999", "1e-999", "4k7x", "4.7k7", "4 k 7", "1 000", "k", "R", "ohm", ".", "5k5k",
-                 "0x10", "470E", "4E7", "5 parsec", "--5", "++5", "5\n6", "1e", "\xFF"},
+  check_refused({"",
+                 " ",
+                 "5 F",
+                 "22n",
+                 "470p",
+                 "2.4 H",
+                 "5 Hz",
+                 "4,7k",
+                 "-5k",
+                 "\xE2\x88\x92"
+                 "5k",
+                 "inf",
+                 "nan",
+                 "infinity",
+                 "1e999",
+                 "1e-999",
+                 "4k7x",
+                 "4.7k7",
+                 "4 k 7",
+                 "1 000",
+                 "k",
+                 "R",
+                 "ohm",
+                 ".",
+                 "5k5k",
+                 "0x10",
+                 "470E",
+                 "4E7",
+                 "5 parsec",
+                 "--5",
+                 "++5",
+                 "5\n6",
+                 "1e",
+                 "\xFF"},
                 Unit::ohm);
   check_refused({"500k", "1M", "0.02 mf", "4R7", "2.4 H", "22f"}, Unit::farad);
   check_refused({"22 nF", "5 ft", "4k7 ohm", "2R4"}, Unit::henry);
@@ -145,7 +175,8 @@ TEST_CASE("A refusal quotes the text and says what is accepted") {
 TEST_CASE("A value outside the range is refused with the range") {
   CHECK(parse_quantity("500k", Unit::ohm, {10, 100e6}) == 500e3);
   CHECK(parse_quantity("10", Unit::ohm, {10, 100e6}) == 10);
-  CHECK_THROWS_WITH(parse_quantity("0", Unit::ohm, {10, 100e6}), ContainsSubstring("10 ohm") && ContainsSubstring("100M"));
+  CHECK_THROWS_WITH(parse_quantity("0", Unit::ohm, {10, 100e6}),
+                    ContainsSubstring("10 ohm") && ContainsSubstring("100M"));
   CHECK_THROWS_WITH(parse_quantity("22 F", Unit::farad, {0.01e-12, 10e-3}),
                     ContainsSubstring("22 F") && ContainsSubstring("0.01 pF") && ContainsSubstring("10 mF"));
   const double nan = std::numeric_limits<double>::quiet_NaN();

@@ -1,4 +1,5 @@
-// Tapers: the laws against the published table of their values, names read and refused, and no wiggle in a measured law.
+// Tapers: the laws against the published table of their values, names read and refused, and no wiggle in a measured
+// law.
 #include "dsp/taper.h"
 
 #include <cmath>
@@ -33,27 +34,35 @@ struct LawRow {
   Corner two_line[4];
 };
 
-// Calculated from r = (b^x - 1)/(b - 1), b = ((1-m)/m)^2, and from slopes 2m and 2(1-m) (algebra; evaluated with scipy).
+// Calculated from r = (b^x - 1)/(b - 1), b = ((1-m)/m)^2, and from slopes 2m and 2(1-m) (algebra; evaluated with
+// scipy).
 const std::vector<LawRow> kLaws = {
-    {0.05, 361.00000,
+    {0.05,
+     361.00000,
      {{0.00223, -53.043}, {0.00933, -40.602}, {0.22728, -12.869}, {0.55371, -5.134}},
      {{0.01000, -40.000}, {0.02500, -32.041}, {0.52500, -5.597}, {0.81000, -1.830}}},
-    {0.10, 81.00000,
+    {0.10,
+     81.00000,
      {{0.00690, -43.225}, {0.02500, -32.041}, {0.32500, -9.762}, {0.63995, -3.877}},
      {{0.02000, -33.979}, {0.05000, -26.021}, {0.55000, -5.193}, {0.82000, -1.724}}},
-    {0.13, 44.78698,
+    {0.13,
+     44.78698,
      {{0.01056, -39.523}, {0.03624, -28.816}, {0.37255, -8.576}, {0.67651, -3.395}},
      {{0.02600, -31.701}, {0.06500, -23.742}, {0.56500, -4.959}, {0.82600, -1.660}}},
-    {0.15, 32.11111,
+    {0.15,
+     32.11111,
      {{0.01333, -37.504}, {0.04437, -27.058}, {0.40144, -7.928}, {0.69744, -3.130}},
      {{0.03000, -30.458}, {0.07500, -22.499}, {0.57500, -4.807}, {0.83000, -1.618}}},
-    {0.20, 16.00000,
+    {0.20,
+     16.00000,
      {{0.02130, -33.432}, {0.06667, -23.522}, {0.46667, -6.620}, {0.74172, -2.595}},
      {{0.04000, -27.959}, {0.10000, -20.000}, {0.60000, -4.437}, {0.84000, -1.514}}},
-    {0.25, 9.00000,
+    {0.25,
+     9.00000,
      {{0.03072, -30.253}, {0.09151, -20.771}, {0.52452, -5.605}, {0.77808, -2.179}},
      {{0.05000, -26.021}, {0.12500, -18.062}, {0.62500, -4.082}, {0.85000, -1.412}}},
-    {0.30, 5.44444,
+    {0.30,
+     5.44444,
      {{0.04155, -27.629}, {0.11869, -18.511}, {0.57695, -4.777}, {0.80905, -1.841}},
      {{0.06000, -24.437}, {0.15000, -16.478}, {0.65000, -3.742}, {0.86000, -1.310}}},
 };
@@ -124,7 +133,8 @@ TEST_CASE("Three straight sections have the values worked out by hand") {
   CHECK_THAT(db(law.share(0.8)), WithinAbs(-4.4370, 1e-4));
 }
 
-TEST_CASE("A linear element with a resistor from wiper to ground follows x/(1 + k x(1-x)) with this taper's linear share") {
+TEST_CASE(
+    "A linear element with a resistor from wiper to ground follows x/(1 + k x(1-x)) with this taper's linear share") {
   // The arrangement is described in Self, Small Signal Audio Design (from memory); values calculated from the formula.
   const double k = 10;  // 100k element, 10k resistor
   const Taper linear;
@@ -191,20 +201,30 @@ TEST_CASE("The measured law agrees with scipy's monotone interpolation") {
     std::vector<TaperPoint> values;
   };
   // scipy 1.10.1, scipy.interpolate.PchipInterpolator(x, r)(at)
-  const std::vector<Reference> references = {
-      {{{0, 0}, {0.2, 0.02}, {0.5, 0.12}, {0.8, 0.6}, {1, 1}},
-       {{0.05, 0.001920173267},
-        {0.1, 0.006453795380},
-        {0.3, 0.040266049593},
-        {0.35, 0.054879651758},
-        {0.6, 0.229164522217},
-        {0.7, 0.408214101904},
-        {0.9, 0.790776119403},
-        {0.97, 0.935732746269}}},
-      {{{0, 0}, {0.5, 0.1}, {1, 1}},
-       {{0.05, 0.00118}, {0.1, 0.00464}, {0.3, 0.03888}, {0.35, 0.05194}, {0.6, 0.17504}, {0.7, 0.31792}, {0.97, 0.92235712}}},
-      {{{0, 0}, {0.1, 0}, {0.45, 0.3}, {0.9, 1}, {1, 1}},
-       {{0.05, 0}, {0.3, 0.128434026451}, {0.35, 0.184805852383}, {0.6, 0.554287548654}, {0.7, 0.762023698591}, {0.97, 1}}}};
+  const std::vector<Reference> references = {{{{0, 0}, {0.2, 0.02}, {0.5, 0.12}, {0.8, 0.6}, {1, 1}},
+                                              {{0.05, 0.001920173267},
+                                               {0.1, 0.006453795380},
+                                               {0.3, 0.040266049593},
+                                               {0.35, 0.054879651758},
+                                               {0.6, 0.229164522217},
+                                               {0.7, 0.408214101904},
+                                               {0.9, 0.790776119403},
+                                               {0.97, 0.935732746269}}},
+                                             {{{0, 0}, {0.5, 0.1}, {1, 1}},
+                                              {{0.05, 0.00118},
+                                               {0.1, 0.00464},
+                                               {0.3, 0.03888},
+                                               {0.35, 0.05194},
+                                               {0.6, 0.17504},
+                                               {0.7, 0.31792},
+                                               {0.97, 0.92235712}}},
+                                             {{{0, 0}, {0.1, 0}, {0.45, 0.3}, {0.9, 1}, {1, 1}},
+                                              {{0.05, 0},
+                                               {0.3, 0.128434026451},
+                                               {0.35, 0.184805852383},
+                                               {0.6, 0.554287548654},
+                                               {0.7, 0.762023698591},
+                                               {0.97, 1}}}};
   for (const Reference& reference : references) {
     const Taper law = Taper::measured(reference.points);
     for (const TaperPoint& value : reference.values) {
@@ -219,7 +239,8 @@ TEST_CASE("The measured law agrees with scipy's monotone interpolation") {
 }
 
 TEST_CASE("An exponential law is laid through any point") {
-  for (const TaperPoint& point : std::vector<TaperPoint>{{0.5, 0.15}, {0.4, 0.05}, {0.6, 0.55}, {0.45, 0.9}, {0.3, 0.3}}) {
+  for (const TaperPoint& point :
+       std::vector<TaperPoint>{{0.5, 0.15}, {0.4, 0.05}, {0.6, 0.55}, {0.45, 0.9}, {0.3, 0.3}}) {
     CAPTURE(point.x, point.r);
     CHECK_THAT(Taper::exponential_through(point).share(point.x), WithinAbs(point.r, 1e-12));
   }
@@ -248,7 +269,8 @@ TEST_CASE("Corners that are no law are refused") {
   CHECK_THROWS_AS(Taper::exponential(0), InputError);
   CHECK_THROWS_AS(Taper::exponential(1), InputError);
   CHECK_THROWS_AS(Taper::exponential(nan), InputError);
-  CHECK_THROWS_WITH(Taper::sections({{0, 0}, {0.4, 0.6}, {0.5, 0.5}, {1, 1}}), ContainsSubstring("share falls from [0.4, 0.6]"));
+  CHECK_THROWS_WITH(Taper::sections({{0, 0}, {0.4, 0.6}, {0.5, 0.5}, {1, 1}}),
+                    ContainsSubstring("share falls from [0.4, 0.6]"));
 }
 
 TEST_CASE("Names are kept, whatever blanks and capitals they came with") {
@@ -270,8 +292,8 @@ TEST_CASE("A law given by a letter is not guessed at") {
   for (const char* text : {"A", "B", "C", "a", "D", "W", "A500K", "B25k", "500kA", "A 500k", "15A", "10C", "4B"}) {
     CAPTURE(text);
     CHECK(unsoldered::is_taper_letter(text));
-    CHECK_THROWS_WITH(parse_taper(text), ContainsSubstring("conventions disagree") && ContainsSubstring("\"audio N%\"") &&
-                                             ContainsSubstring("measured_half"));
+    CHECK_THROWS_WITH(parse_taper(text), ContainsSubstring("conventions disagree") &&
+                                             ContainsSubstring("\"audio N%\"") && ContainsSubstring("measured_half"));
   }
   for (const char* text : {"linear", "audio 15%", "ideal audio 15%", "log", "", "500k"}) {
     CAPTURE(text);
@@ -280,9 +302,9 @@ TEST_CASE("A law given by a letter is not guessed at") {
 }
 
 TEST_CASE("Names that are no law are refused with those that are") {
-  for (const char* text : {"", "log", "log 15%", "antilog", "audio 15", "audio %", "audio x%", "audio -5%", "audio 1e", "lin",
-                           "reverse", "ideal", "ideal linear", "reverse linear", "audio ideal 15%", "audio 15% x", "audio nan%",
-                           "MN", "audio 15%%"}) {
+  for (const char* text : {"", "log", "log 15%", "antilog", "audio 15", "audio %", "audio x%", "audio -5%", "audio 1e",
+                           "lin", "reverse", "ideal", "ideal linear", "reverse linear", "audio ideal 15%",
+                           "audio 15% x", "audio nan%", "MN", "audio 15%%"}) {
     CAPTURE(text);
     CHECK_THROWS_WITH(parse_taper(text), ContainsSubstring("\"linear\"") || ContainsSubstring("1 % to 49 %"));
   }

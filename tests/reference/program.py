@@ -7,7 +7,6 @@ import os
 import pathlib
 import shutil
 import subprocess
-import unittest
 
 ROOT = pathlib.Path(os.environ.get("UNSOLDERED_SOURCE", pathlib.Path(__file__).resolve().parents[2]))
 
@@ -18,7 +17,7 @@ def path():
                       shutil.which("unsoldered")):
         if candidate and pathlib.Path(candidate).exists():
             return str(candidate)
-    raise unittest.SkipTest("set UNSOLDERED to the program")
+    raise RuntimeError("no program to test: set UNSOLDERED to its path")
 
 
 def call(*words, cwd=None):

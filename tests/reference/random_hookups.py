@@ -6,7 +6,7 @@ extra parts go anywhere, values span decades, pots have no end resistance half o
 
 import random
 
-from hookup_model import Circuit, Hookup, ShortedSource
+from hookup_model import EMF, GROUND, Hookup, ShortedSource
 from trade_values import draw, parse
 
 TRAVELS = (300, 270, 280.0, 265)
@@ -164,6 +164,8 @@ def text_of(seed, extras=True):
 def _sound(text, dials):
     """Whether the hookup has an answer at these dials, by the reference's own reading."""
     hookup = Hookup(text)
+    if not _leads_somewhere(hookup):
+        return False
     for dial in dials:
         try:
             circuit = hookup.circuit(dial)
@@ -179,6 +181,18 @@ def _sound(text, dials):
         if any(n not in circuit.nodes for n in new_nodes if not _merged(hookup, dial, n)):
             return False
     return True
+
+
+def _leads_somewhere(hookup):
+    """Whether something leads from the emf to the grid without passing ground, away from the ends of travel."""
+    reached, grown = {EMF}, True
+    while grown:
+        grown = False
+        for p in hookup.parts(5.0):
+            if GROUND not in (p.a, p.b) and (p.a in reached) != (p.b in reached):
+                reached |= {p.a, p.b}
+                grown = True
+    return "grid" in reached
 
 
 def _merged(hookup, dial, name):
@@ -202,6 +216,3 @@ def dials_of(seed, count=4):
     r = random.Random(f"dials {seed}")
     inner = [round(r.uniform(0.05, 9.95), 2) for _ in range(count - 2)]
     return [0.0, *sorted(inner), 10.0]
-
-
-__all__ = ["Circuit", "dials_of", "hookup", "text_of"]

@@ -29,7 +29,7 @@ STEP_RATIO = 1.001
 FLOOR_OHM = 1e-3
 FADE_S = 0.02
 SINES = 24
-STEPS_PER_SAMPLE = (128, 256)
+STEPS_PER_SAMPLE = (64, 128, 256)  # the last only where the first two differ by more than HALVING_DB
 
 
 class Sines:
@@ -148,18 +148,28 @@ def reference(name, turn_name, rate):
     model = Hookup(turn_cases.text_of(name))
     first, last = int(math.ceil(turn[1][0] * rate)), int(math.floor(turn[-1][0] * rate))
     times = np.arange(first, last + 1) / rate
-    decks = [deck(model, turn, sines, 1.0 / (rate * n), turn[-1][0] + 4.0 / rate) for n in STEPS_PER_SAMPLE]
+    coarse = fine = halving = None
+    for steps in STEPS_PER_SAMPLE:
+        text = deck(model, turn, sines, 1.0 / (rate * steps), turn[-1][0] + 4.0 / rate)
+        coarse, fine = fine, kept_transient(text, times)
+        if coarse is not None:
+            halving = ratio_db(fine - coarse, fine)
+            if halving < HALVING_DB:
+                break
+    return fine + (fine - coarse) / 3.0, first, halving
+
+
+def kept_transient(text, times):
     cache = os.environ.get("UNSOLDERED_REFERENCE_CACHE")
-    kept = pathlib.Path(cache) / (hashlib.sha256("".join(decks).encode()).hexdigest()[:32] + ".npy") if cache else None
+    kept = pathlib.Path(cache) / (hashlib.sha256(text.encode()).hexdigest()[:32] + ".npy") if cache else None
     if kept and kept.exists():
-        coarse, fine = np.load(kept)
-    else:
-        with tempfile.TemporaryDirectory() as folder:
-            coarse, fine = (transient(d, pathlib.Path(folder), times) for d in decks)
-        if kept:
-            kept.parent.mkdir(parents=True, exist_ok=True)
-            np.save(kept, np.array([coarse, fine]))
-    return fine + (fine - coarse) / 3.0, first, ratio_db(fine - coarse, fine)
+        return np.load(kept)
+    with tempfile.TemporaryDirectory() as folder:
+        result = transient(text, pathlib.Path(folder), times)
+    if kept:
+        kept.parent.mkdir(parents=True, exist_ok=True)
+        np.save(kept, result)
+    return result
 
 
 def sines_of(name, turn_name):
@@ -198,7 +208,7 @@ def check(test, name, cases):
     program.path()  # skips when there is none
     with concurrent.futures.ThreadPoolExecutor(2) as pool:
         results = list(pool.map(run_case, cases))
-    print(f"{name}: {len(cases)} turns, against ngspice transients at 1/{STEPS_PER_SAMPLE[0]} and 1/{STEPS_PER_SAMPLE[1]} sample")
+    print(f"{name}: {len(cases)} turns against ngspice transients at 1/{STEPS_PER_SAMPLE[0]} sample and finer")
     print(f"{'hookup':58} {'turn':18} {'rate':>6} {'error dB':>9} {'step ratio':>10} {'halving dB':>10}")
     for (hookup, turn, rate), error, steps, halving in results:
         print(f"{hookup:58} {turn:18} {rate:6d} {error:9.1f} {steps:10.5f} {halving:10.1f}")

@@ -54,6 +54,9 @@ std::set<std::string> names_in(const fs::path& folder) {
   return names;
 }
 
+std::string csv(const std::vector<ClipRow>& clips) { return unsoldered::csv_text(unsoldered::clip_table(clips)); }
+std::string json(const std::vector<ClipRow>& clips) { return unsoldered::json_text(unsoldered::clip_table(clips)); }
+
 double peak_db(const Sound& sound) {
   double peak = 0;
   for (const double sample : sound.samples) peak = std::max(peak, std::abs(sample));
@@ -82,7 +85,7 @@ TEST_CASE("Every hookup at every dial becomes a clip, and clips.csv lists them i
     CHECK(result.clips[i].gain_db == 0);
     CHECK_THAT(result.clips[i].peak_dbfs, WithinAbs(peak_db(read_sound(folder / "clips" / files[i])), 1e-9));
   }
-  CHECK(read_text(folder / "clips/clips.csv") == unsoldered::clips_csv(result.clips));
+  CHECK(read_text(folder / "clips/clips.csv") == csv(result.clips));
 }
 
 TEST_CASE("Clips line up with the take: its length, rate, channels and time") {
@@ -200,8 +203,8 @@ TEST_CASE("Silence has the level -inf and stays silence at every depth") {
   for (const Depth depth : {Depth::pcm16, Depth::pcm24, Depth::float32}) {
     request.depth = depth;
     const RenderResult result = render(request);
-    CHECK_THAT(unsoldered::clips_csv(result.clips), ContainsSubstring(",10,0,-inf,,\n"));
-    CHECK_THAT(unsoldered::clips_json(result.clips), ContainsSubstring("\"peak_dbfs\": null"));
+    CHECK_THAT(csv(result.clips), ContainsSubstring(",10,0,-inf,,\n"));
+    CHECK_THAT(json(result.clips), ContainsSubstring("\"peak_dbfs\": null"));
   }
 }
 
@@ -328,6 +331,8 @@ TEST_CASE("A folder for the clips is made with its parents, and taken away when 
   CHECK_THAT(message_of<InputError>([&] { render(request); }), ContainsSubstring("is a file"));
   request.folder = folder / "take.wav/clips";
   CHECK_THROWS(render(request));
+  request.folder = "";
+  CHECK_THAT(message_of<InputError>([&] { render(request); }), ContainsSubstring("--out"));
   request.folder = "/proc/no-such-folder";
   CHECK_THAT(message_of<CannotError>([&] { render(request); }), ContainsSubstring("/proc/no-such-folder"));
 }
@@ -405,13 +410,13 @@ TEST_CASE("Names of clips keep what is safe everywhere and letters of all langua
 
 TEST_CASE("The list of clips quotes what needs it and writes numbers alike in every locale") {
   const ClipRow clip{"a.wav", "with, \"quotes\"", 7.123456789012, -0.5, -12.3456789012};
-  CHECK(unsoldered::clips_csv({clip}) ==
+  CHECK(csv({clip}) ==
         "file,hookup,dial,gain_db,peak_dbfs,peak_dbtp,loudness_lufs\n"
         "a.wav,\"with, \"\"quotes\"\"\",7.12345679,-0.5,-12.3456789,,\n");
-  CHECK(unsoldered::clips_json({clip}) ==
+  CHECK(json({clip}) ==
         "[\n {\"file\": \"a.wav\", \"hookup\": \"with, \\\"quotes\\\"\", \"dial\": 7.12345679, \"gain_db\": -0.5, "
         "\"peak_dbfs\": -12.3456789, \"peak_dbtp\": null, \"loudness_lufs\": null}\n]\n");
-  CHECK(unsoldered::clips_json({}) == "[\n]\n");
+  CHECK(json({}) == "[\n]\n");
   for (const double value : {0.1, 1.0 / 3, 1e-7, 123456789.0, 1234567890.0, -1e300, 0.0, 5e-324}) {
     char text[64];
     std::snprintf(text, sizeof text, "%.9g", value);
