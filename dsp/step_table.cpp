@@ -2,7 +2,6 @@
 
 #include <algorithm>
 #include <cmath>
-#include <numbers>
 #include <string>
 
 #include "dsp/error.h"
@@ -13,8 +12,13 @@
 namespace unsoldered {
 namespace {
 
-constexpr int row_count = 1024;
+constexpr int row_count = 3072;
 constexpr int most_states = 64;  // of the kernel's work space
+
+double fraction_of(double place) {
+  const double up = std::pow(place, 4);
+  return up / (up + std::pow(1 - place, 4));
+}
 
 std::size_t moving_pot(const Network& network, Knob knob) {
   for (std::size_t i = 0; i < network.pots.size(); ++i)
@@ -65,8 +69,7 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(ro
   const auto size = static_cast<std::size_t>(layout_.size);
   data_.assign(size * static_cast<std::size_t>(rows_ + 2), 0);
   for (int i = 0; i < rows_; ++i) {
-    const double fraction = (1 - std::cos(std::numbers::pi * i / (rows_ - 1))) / 2;
-    write_row(family.at(fraction), rate_hz, layout_, data_.data() + size * static_cast<std::size_t>(i));
+    write_row(family.at(fraction_of(static_cast<double>(i) / (rows_ - 1))), rate_hz, layout_, data_.data() + size * static_cast<std::size_t>(i));
   }
   double* last = data_.data() + size * static_cast<std::size_t>(rows_);
   if (open_at_ten_)
@@ -78,7 +81,9 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(ro
 double StepTable::position(double dial) const noexcept {
   if (open_at_ten_ && dial >= 10) return rows_;
   const double fraction = std::clamp(element_fraction(pot_, dial), 0.0, 1.0);
-  return std::acos(1 - 2 * fraction) * (rows_ - 1) / std::numbers::pi;
+  const double up = std::sqrt(std::sqrt(fraction));
+  const double down = std::sqrt(std::sqrt(1 - fraction));
+  return up / (up + down) * (rows_ - 1);
 }
 
 }  // namespace unsoldered

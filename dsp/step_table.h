@@ -3,7 +3,8 @@
 // A position between two rows takes their weighted mean. Each row is a contraction in the energy norm, so the mean is one
 // too: no motion of the knob can make stored energy grow. Rows are laid over the element fraction (kinks in the taper cost
 // nothing), closer together towards both ends, where the sections of the pot become short circuits:
-// fraction = (1 - cos(pi row / (rows - 1))) / 2.
+// fraction = p^4 / (p^4 + (1 - p)^4), p = row / (rows - 1). Where the time constant of a section passes the length of a
+// sample the steps bend most; there the rows lie half a per cent apart, which keeps their mean within -100 dB of exact.
 #pragma once
 
 #include <vector>
