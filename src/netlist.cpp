@@ -3,6 +3,7 @@
 #include <array>
 #include <charconv>
 
+#include "dsp/disjoint_sets.h"
 #include "dsp/hookup_network.h"
 
 namespace unsoldered {
@@ -31,9 +32,12 @@ std::string netlist_text(const Hookup& hookup, double dial) {
   std::string deck = "* " + printable(hookup.title) + ", volume at " + exact_number(dial) + "\n";
   deck += "Vemf emf 0 AC 1\n";
   int number = 0;
+  DisjointSets wired(network.node_names.size());
   for (const Branch& branch : settle(network)) {
     ++number;
     const bool wire = branch.kind == BranchKind::resistor && branch.value == 0;
+    if (wire && wired.together(branch.a, branch.b)) continue;  // a loop of wires would have no one current
+    if (wire) wired.join(branch.a, branch.b);
     const char letter = wire                                     ? 'V'
                         : branch.kind == BranchKind::resistor    ? 'R'
                         : branch.kind == BranchKind::capacitor   ? 'C'
