@@ -14,7 +14,7 @@ namespace {
 using LongComplex = std::complex<Long>;
 using LongComplexVector = Eigen::Matrix<LongComplex, Eigen::Dynamic, 1>;
 
-constexpr Long inaudible = 1e-9L;        // -180 dB of full scale for everything a mode will ever add
+constexpr Long inaudible = 1e-9L;  // -180 dB of full scale for everything a mode will ever add
 constexpr Long modes_must_agree = 1e-10L;
 constexpr int compared_samples = 200;
 

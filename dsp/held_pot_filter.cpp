@@ -26,9 +26,9 @@ struct HeldPotFilter::State {
 
   State(const Hookup& hookup, double dial, double rate_hz, int channels) : interpolator(rate_hz) {
     const StateSpace space = StateSpaceFamily(hookup_network(hookup, dial)).at(0);
-    const HalfSteps halves = half_steps(space, rate_hz);
-    const LongMatrix whole = halves.transition * halves.transition;
-    const LongMatrix drive = halves.transition * halves.first_drive + halves.second_drive;
+    const Step<Long> step = exact_step(space, 1 / static_cast<Long>(rate_hz));
+    const LongMatrix& whole = step.transition;
+    const Drive<Long> drive = step.drive * chebyshev_powers<Long>(0, 1);
     const int taps = interpolator.taps();
     LongVector state = LongVector::Zero(space.a.rows());
     response.resize(static_cast<std::size_t>(taps));

@@ -40,8 +40,7 @@ void add_source(Network& network, const Source& source) {
 void add_treble_bleed(Network& network, const TrebleBleed& bleed) {
   const std::string inside = bleed.series_ohm ? "treble_bleed_inside" : "wiper";
   add(network, BranchKind::capacitor, "top", inside, bleed.capacitor_f, "treble bleed capacitor");
-  if (bleed.series_ohm)
-    add(network, BranchKind::resistor, inside, "wiper", *bleed.series_ohm, "treble bleed resistor");
+  if (bleed.series_ohm) add(network, BranchKind::resistor, inside, "wiper", *bleed.series_ohm, "treble bleed resistor");
   if (bleed.parallel_ohm)
     add(network, BranchKind::resistor, "top", "wiper", *bleed.parallel_ohm, "treble bleed resistor");
 }

@@ -5,15 +5,15 @@
 namespace unsoldered {
 
 /// Where the parts of a row of a step table lie; columns of matrices are contiguous and padded to a multiple of four.
+/// Three steps of equal layout come first: knob standing, arriving rising, arriving falling.
 struct RowLayout {
   int states = 0;
   int padded = 0;
-  int transition = 0;    // padded x states
-  int first_drive = 0;   // padded x moments
-  int second_drive = 0;  // padded x moments
-  int output = 0;        // padded
-  int direct = 0;        // 1
-  int size = 0;          // of a row, a multiple of four
+  int drive = 0;   // padded x moments, inside a step; its transition, padded x states, comes before
+  int step = 0;    // size of a step
+  int output = 0;  // padded
+  int direct = 0;  // 1
+  int size = 0;    // of a row, a multiple of four
 };
 
 /// See Interpolator::process. weights[p * taps + k], taps <= 64; even moments have weights even in k, odd ones odd. Works in
@@ -35,14 +35,16 @@ struct Modes {
 };
 void ring(const Modes& modes, const double* input, int frames, double* re, double* im, double* out) noexcept;
 
-/// One channel of a moving-pot filter. positions[n] is the table row (its fraction: share of the next) at the end of sample
-/// n, positions[-1] that at the start of the first. moments[p * stride + n], direct_input[n]. work: two rows and one state.
+/// One channel of a moving-pot filter. rows[n] is the table row (its fraction: share of the next) at the end of sample n,
+/// rows[-1] that at the start of the first; speeds[n] is the knob's speed within it, -1..1 (0: standing).
+/// interval_moments[p * stride + n], direct_input[n]. work: one row and one state.
 /// state[padded] is kept between calls. out[n] = output of the state at the end of sample n.
 struct TurnInput {
   const double* table;
   RowLayout layout;
   int moments;
-  const double* positions;
+  const double* rows;
+  const double* speeds;
   const double* interval_moments;
   int stride;
   const double* direct_input;

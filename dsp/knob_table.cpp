@@ -62,9 +62,9 @@ std::vector<ScanPoint> scan(NodalAnalysis& analysis, const std::vector<double>& 
 template <typename Function>
 double root_hz(const Function& function, double low_hz, double high_hz) {
   std::uintmax_t iterations = 100;
-  const auto bracket = boost::math::tools::toms748_solve([&](double log_f) { return function(std::exp(log_f)); },
-                                                         std::log(low_hz), std::log(high_hz),
-                                                         boost::math::tools::eps_tolerance<double>(46), iterations);
+  const auto bracket =
+      boost::math::tools::toms748_solve([&](double log_f) { return function(std::exp(log_f)); }, std::log(low_hz),
+                                        std::log(high_hz), boost::math::tools::eps_tolerance<double>(46), iterations);
   return std::exp((bracket.first + bracket.second) / 2);
 }
 
@@ -80,10 +80,9 @@ void find_corner(NodalAnalysis& analysis, const std::vector<ScanPoint>& points, 
 void find_peak(NodalAnalysis& analysis, const std::vector<ScanPoint>& points, KnobRow& row) {
   for (std::size_t i = 1; i < points.size() && points[i].hz <= peak_top_hz; ++i) {
     if (!(points[i - 1].transfer.slope() > 0 && points[i].transfer.slope() <= 0)) continue;
-    const double hz =
-        points[i].transfer.slope() == 0
-            ? points[i].hz
-            : root_hz([&](double f) { return analysis.transfer(f).slope(); }, points[i - 1].hz, points[i].hz);
+    const double hz = points[i].transfer.slope() == 0 ? points[i].hz
+                                                      : root_hz([&](double f) { return analysis.transfer(f).slope(); },
+                                                                points[i - 1].hz, points[i].hz);
     const double db = analysis.transfer(hz).level_db();
     if (hz >= peak_top_hz || (row.peak_db && db <= *row.peak_db)) continue;
     row.peak_hz = hz;
@@ -121,7 +120,8 @@ std::vector<KnobRow> knob_table(const Hookup& hookup, const std::vector<double>&
     row.noise_uv = 1e6 * johnson_noise_v(analysis, 20, 20000, room_temperature_k);
     if (std::isfinite(row.level_db)) {
       const double balance_db = treble_balance_db(analysis, bands);
-      if (std::isfinite(full_balance_db) && std::isfinite(balance_db)) row.treble_lost_db = full_balance_db - balance_db;
+      if (std::isfinite(full_balance_db) && std::isfinite(balance_db))
+        row.treble_lost_db = full_balance_db - balance_db;
       row.treble_5k_1k_db = to_db(std::norm(analysis.value(5000))) - row.level_db;
       const std::vector<ScanPoint> points = scan(analysis, natural_frequencies_hz(network));
       find_corner(analysis, points, row);

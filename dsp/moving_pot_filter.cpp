@@ -16,13 +16,15 @@ struct MovingPotFilter::State {
 
   Interpolator interpolator;
   StepTable table;
-  std::vector<History> history;      // by channel
-  std::vector<double> states;        // channels x padded
-  std::vector<double> moments;       // Interpolator::moments x block
-  std::vector<double> work;          // for the kernel: two rows and one state
-  std::vector<double> positions;     // that before the block, then one a frame
-  double dial = 0;                   // of positions' last
-  bool at_rest = true;               // nothing played yet: the first dial is where the knob has always been
+  std::vector<History> history;  // by channel
+  std::vector<double> states;    // channels x padded
+  std::vector<double> moments;   // Interpolator::moments x block
+  std::vector<double> work;      // for the kernel: a row and a state
+  std::vector<double> rows;      // of the knob, one a frame
+  std::vector<double> speeds;    // one a frame
+  KnobPlace place;               // at the last frame
+  double dial = 0;               // at the last frame
+  bool at_rest = true;           // nothing played yet: the first dial is where the knob has always been
 
   State(const Hookup& hookup, Knob knob, double rate_hz, int channels)
       : interpolator(rate_hz), table(hookup, knob, rate_hz) {
@@ -30,20 +32,24 @@ struct MovingPotFilter::State {
     history.assign(count, History(interpolator.taps(), block));
     states.assign(count * static_cast<std::size_t>(table.layout().padded), 0);
     moments.assign(static_cast<std::size_t>(Interpolator::moments) * block, 0);
-    work.assign(static_cast<std::size_t>(2 * table.layout().size + table.layout().padded), 0);
-    positions.assign(1 + block, 0);
+    work.assign(static_cast<std::size_t>(table.layout().size + table.layout().padded), 0);
+    rows.assign(block, 0);
+    speeds.assign(block, 0);
   }
 
   void follow(const double* dials, int frames) noexcept {
     if (at_rest) {
       dial = dials[0];
-      positions[0] = table.position(dial);
+      place = table.place(dial);
       at_rest = false;
     }
     for (int n = 0; n < frames; ++n) {
       const auto i = static_cast<std::size_t>(n);
-      positions[i + 1] = dials[n] == dial ? positions[i] : table.position(dials[n]);
+      const KnobPlace before = place;
+      if (dials[n] != dial) place = table.place(dials[n]);
       dial = dials[n];
+      rows[i] = place.row;
+      speeds[i] = table.speed(before, place);
     }
   }
 
@@ -51,8 +57,13 @@ struct MovingPotFilter::State {
     History& past = history[channel];
     past.push(in, frames);
     interpolator.process(past.newest(), frames, moments.data(), block);
-    const TurnInput input{table.rows(),         table.layout(), Interpolator::moments,
-                          positions.data() + 1, moments.data(), block,
+    const TurnInput input{table.rows(),
+                          table.layout(),
+                          Interpolator::moments,
+                          rows.data(),
+                          speeds.data(),
+                          moments.data(),
+                          block,
                           past.newest() - interpolator.latency()};
     turn(input, frames, work.data(), states.data() + channel * static_cast<std::size_t>(table.layout().padded), out);
     past.keep(frames);
@@ -74,7 +85,6 @@ void MovingPotFilter::process(const double* const* in, double* const* out, int f
     state_->follow(dials + done, count);
     for (std::size_t channel = 0; channel < state_->history.size(); ++channel)
       state_->process(in[channel] + done, out[channel] + done, count, channel);
-    state_->positions[0] = state_->positions[static_cast<std::size_t>(count)];
   }
 }
 

@@ -24,7 +24,7 @@ struct Branch {
   Node a = 0;
   Node b = 0;
   double value = 0;
-  std::string name;  // what the user would call it: "cable", "load resistance"
+  std::string name;           // what the user would call it: "cable", "load resistance"
   bool after_output = false;  // cable and load: left out of the output resistance
 };
 
@@ -35,8 +35,8 @@ struct PotInNetwork {
   Node wiper = 0;
   Node bottom = 0;
   double dial = 10;
-  bool open_at_ten = false;     // no-load: the section below the wiper is open with the dial at 10
-  std::optional<Knob> knob;     // the knob of the hookup that turns it
+  bool open_at_ten = false;  // no-load: the section below the wiper is open with the dial at 10
+  std::optional<Knob> knob;  // the knob of the hookup that turns it
   std::string name;
 };
 

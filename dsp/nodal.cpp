@@ -168,8 +168,8 @@ double johnson_noise_v(NodalAnalysis& analysis, double from_hz, double to_hz, do
     const double f = std::exp(log_f);
     return f * analysis.impedance(f).real();
   };
-  const double integral = boost::math::quadrature::gauss_kronrod<double, 31>::integrate(
-      integrand, std::log(from_hz), std::log(to_hz), 12, 1e-6);
+  const double integral = boost::math::quadrature::gauss_kronrod<double, 31>::integrate(integrand, std::log(from_hz),
+                                                                                        std::log(to_hz), 12, 1e-6);
   return std::sqrt(4 * boltzmann_j_per_k * temperature_k * integral);
 }
 

@@ -14,13 +14,13 @@ namespace unsoldered {
 
 /// Transfer from the emf and its derivative by angular frequency.
 struct Transfer {
-  std::complex<double> value;          // V(observed)/emf
-  std::complex<double> by_omega;       // d value / d omega, seconds
+  std::complex<double> value;     // V(observed)/emf
+  std::complex<double> by_omega;  // d value / d omega, seconds
 
-  double level_db() const noexcept;        // 20 log10 |H|; -inf for no signal
-  double phase_deg() const noexcept;       // -180..180
-  double group_delay_s() const noexcept;   // -d phase / d omega; NaN where there is no signal
-  double slope() const noexcept;           // d ln|H| / d omega
+  double level_db() const noexcept;       // 20 log10 |H|; -inf for no signal
+  double phase_deg() const noexcept;      // -180..180
+  double group_delay_s() const noexcept;  // -d phase / d omega; NaN where there is no signal
+  double slope() const noexcept;          // d ln|H| / d omega
 };
 
 /// A network at fixed knob positions, prepared for many frequencies. Not for sharing between threads (holds work space).

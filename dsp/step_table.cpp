@@ -7,17 +7,43 @@
 #include "dsp/error.h"
 #include "dsp/exact_step.h"
 #include "dsp/hookup_network.h"
-#include "dsp/interpolator.h"
 
 namespace unsoldered {
 namespace {
 
+constexpr int moments = Interpolator::moments;
 constexpr int row_count = 3072;
 constexpr int most_states = 64;  // of the kernel's work space
+
+// A moving knob is taken as standing for short spans of the sample, in each where it is in the middle of that span. The
+// last octave before the end, from 1/2 to 0 before it, then 1/4 to 1/8 and so on, are each cut into equal spans, so
+// that they are short where a short time constant can see them: it forgets what came before.
+constexpr int halvings = 6;  // the shortest span is 2^-halvings of a sample
+constexpr int spans_an_octave = 2;
+
+constexpr double full_turn_s = 0.05;
+constexpr double most_speed_per_s = 200;  // element fraction; a law with a jump in it has no steepest place
+
+/// Element fraction a second, of a full turn where the law is steepest.
+double full_speed_per_s(const Pot& pot) {
+  constexpr int places = 2000;
+  double steepest = 1;
+  for (int i = 0; i < places; ++i) {
+    const double rise = element_fraction(pot, 10.0 * (i + 1) / places) - element_fraction(pot, 10.0 * i / places);
+    steepest = std::max(steepest, rise * places);
+  }
+  return std::min(steepest / full_turn_s, most_speed_per_s);
+}
 
 double fraction_of(double place) {
   const double up = std::pow(place, 4);
   return up / (up + std::pow(1 - place, 4));
+}
+
+double row_of(double fraction) noexcept {
+  const double up = std::sqrt(std::sqrt(fraction));
+  const double down = std::sqrt(std::sqrt(1 - fraction));
+  return up / (up + down) * (row_count - 1);
 }
 
 std::size_t moving_pot(const Network& network, Knob knob) {
@@ -30,28 +56,49 @@ RowLayout row_layout(int states) {
   RowLayout layout;
   layout.states = states;
   layout.padded = (states + 3) / 4 * 4;
-  layout.first_drive = layout.padded * states;
-  layout.second_drive = layout.first_drive + layout.padded * Interpolator::moments;
-  layout.output = layout.second_drive + layout.padded * Interpolator::moments;
+  layout.drive = layout.padded * states;
+  layout.step = layout.drive + layout.padded * moments;
+  layout.output = 3 * layout.step;
   layout.direct = layout.output + layout.padded;
   layout.size = (layout.direct + 1 + 3) / 4 * 4;
   return layout;
 }
 
-void write_row(const StateSpace& space, double rate_hz, const RowLayout& layout, double* row) {
-  const HalfSteps steps = half_steps(space, rate_hz);
-  for (int column = 0; column < layout.states; ++column)
-    for (int i = 0; i < layout.states; ++i)
-      row[layout.transition + column * layout.padded + i] = static_cast<double>(steps.transition(i, column));
-  for (int p = 0; p < Interpolator::moments; ++p) {
-    for (int i = 0; i < layout.states; ++i) {
-      row[layout.first_drive + p * layout.padded + i] = static_cast<double>(steps.first_drive(i, p));
-      row[layout.second_drive + p * layout.padded + i] = static_cast<double>(steps.second_drive(i, p));
-    }
+using Packed = Eigen::Map<Eigen::MatrixXd, Eigen::Unaligned, Eigen::OuterStride<>>;
+
+/// A step inside a row: drive in Chebyshev moments of the sample's interval.
+struct RowStep {
+  Packed transition;
+  Packed drive;
+  RowStep(const RowLayout& layout, double* step)
+      : transition(step, layout.states, layout.states, Eigen::OuterStride<>(layout.padded)),
+        drive(step + layout.drive, layout.states, moments, Eigen::OuterStride<>(layout.padded)) {}
+};
+
+/// What happens at the rows' positions over one and the same span, and between them.
+class SpanSteps {
+ public:
+  explicit SpanSteps(std::vector<Step<double>> rows) : rows_(std::move(rows)) {}
+
+  const Step<double>& row(int i) const { return rows_[static_cast<std::size_t>(i)]; }
+
+  /// The mean of two rows, written to `step`.
+  void at(double row, Step<double>& step) const {
+    const int below = std::min(static_cast<int>(row), static_cast<int>(rows_.size()) - 2);
+    const double share = row - below;
+    const Step<double>& low = rows_[static_cast<std::size_t>(below)];
+    const Step<double>& high = rows_[static_cast<std::size_t>(below) + 1];
+    step.transition.noalias() = (1 - share) * low.transition + share * high.transition;
+    step.drive.noalias() = (1 - share) * low.drive + share * high.drive;
   }
-  for (int i = 0; i < layout.states; ++i) row[layout.output + i] = static_cast<double>(space.c(i));
-  row[layout.direct] = static_cast<double>(space.d);
-}
+
+  void double_span() {
+    for (Step<double>& step : rows_) step = doubled(step);
+  }
+
+ private:
+  std::vector<Step<double>> rows_;
+};
 
 }  // namespace
 
@@ -65,25 +112,85 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(ro
                      ": leave out extra capacitors and inductors");
   layout_ = row_layout(family.states());
   pot_ = network.pots[moving].pot;
+  full_speed_ = full_speed_per_s(pot_) / rate_hz;
   open_at_ten_ = network.pots[moving].open_at_ten;
   const auto size = static_cast<std::size_t>(layout_.size);
   data_.assign(size * static_cast<std::size_t>(rows_ + 2), 0);
+  const auto row_data = [&](int row) { return data_.data() + size * static_cast<std::size_t>(row); };
+  const auto write_output = [&](const StateSpace& space, double* row) {
+    for (int i = 0; i < layout_.states; ++i) row[layout_.output + i] = static_cast<double>(space.c(i));
+    row[layout_.direct] = static_cast<double>(space.d);
+  };
+
+  const Long shortest_s = std::ldexp(Long(1) / rate_hz, -halvings);
+  std::vector<Step<double>> shortest;
+  shortest.reserve(static_cast<std::size_t>(rows_));
   for (int i = 0; i < rows_; ++i) {
-    write_row(family.at(fraction_of(static_cast<double>(i) / (rows_ - 1))), rate_hz, layout_, data_.data() + size * static_cast<std::size_t>(i));
+    const StateSpace space = family.at(fraction_of(static_cast<double>(i) / (rows_ - 1)));
+    write_output(space, row_data(i));
+    shortest.push_back(exact_step_in_double(space, shortest_s));
   }
-  double* last = data_.data() + size * static_cast<std::size_t>(rows_);
-  if (open_at_ten_)
-    write_row(family.disconnected(), rate_hz, layout_, last);
-  else
+  SpanSteps spans(std::move(shortest));
+
+  // From the end of the sample to its start: each span comes before those already in the row.
+  Step<double> span{Matrix<double>(layout_.states, layout_.states), Drive<double>(layout_.states, moments)};
+  const auto put_before = [&](double start, double length) {
+    const Polynomials<double> powers = chebyshev_powers(start, length);
+    for (int i = 0; i < rows_; ++i) {
+      const double fraction = fraction_of(static_cast<double>(i) / (rows_ - 1));
+      for (const int direction : {1, -1}) {
+        const double passed = (1 - start - length / 2) * full_speed_ * direction;
+        spans.at(row_of(std::clamp(fraction - passed, 0.0, 1.0)), span);
+        RowStep later(layout_, row_data(i) + (direction > 0 ? 1 : 2) * layout_.step);
+        if (start + length == 1) {
+          later.transition = span.transition;
+          later.drive = span.drive.lazyProduct(powers);
+        } else {
+          later.drive += later.transition.lazyProduct(span.drive.lazyProduct(powers).eval());
+          later.transition = later.transition.lazyProduct(span.transition).eval();
+        }
+      }
+    }
+  };
+  double end = 1;
+  const auto put_octave = [&](double length) {
+    for (int i = 0; i < spans_an_octave; ++i, end -= length) put_before(end - length, length);
+  };
+  put_octave(std::ldexp(1.0, -halvings));
+  for (int halving = halvings; halving > 0; --halving) {
+    if (end > 0) put_octave(std::ldexp(1.0, -halving));
+    spans.double_span();
+  }
+  const Polynomials<double> whole = chebyshev_powers(0.0, 1.0);
+  for (int i = 0; i < rows_; ++i) {
+    RowStep still(layout_, row_data(i));
+    still.transition = spans.row(i).transition;
+    still.drive = spans.row(i).drive.lazyProduct(whole);
+  }
+
+  double* last = row_data(rows_);
+  if (open_at_ten_) {
+    const StateSpace space = family.disconnected();
+    write_output(space, last);
+    const Step<double> step = exact_step_in_double(space, Long(1) / rate_hz);
+    for (int arrival = 0; arrival < 3; ++arrival) {
+      RowStep row(layout_, last + arrival * layout_.step);
+      row.transition = step.transition;
+      row.drive = step.drive.lazyProduct(whole);
+    }
+  } else {
     std::copy_n(last - layout_.size, layout_.size, last);
+  }
 }
 
-double StepTable::position(double dial) const noexcept {
-  if (open_at_ten_ && dial >= 10) return rows_;
+KnobPlace StepTable::place(double dial) const noexcept {
   const double fraction = std::clamp(element_fraction(pot_, dial), 0.0, 1.0);
-  const double up = std::sqrt(std::sqrt(fraction));
-  const double down = std::sqrt(std::sqrt(1 - fraction));
-  return up / (up + down) * (rows_ - 1);
+  if (open_at_ten_ && dial >= 10) return {static_cast<double>(rows_), fraction};
+  return {row_of(fraction), fraction};
+}
+
+double StepTable::speed(const KnobPlace& from, const KnobPlace& to) const noexcept {
+  return std::clamp((to.fraction - from.fraction) / full_speed_, -1.0, 1.0);
 }
 
 }  // namespace unsoldered

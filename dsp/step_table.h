@@ -1,10 +1,17 @@
-// Exact half-sample steps of a circuit for every position of one knob, laid out for the audio callback.
+// Exact sample steps of a circuit for every position and speed of one knob, laid out for the audio callback.
 //
-// A position between two rows takes their weighted mean. Each row is a contraction in the energy norm, so the mean is one
-// too: no motion of the knob can make stored energy grow. Rows are laid over the element fraction (kinks in the taper cost
-// nothing), closer together towards both ends, where the sections of the pot become short circuits:
-// fraction = p^4 / (p^4 + (1 - p)^4), p = row / (rows - 1). Where the time constant of a section passes the length of a
-// sample the steps bend most; there the rows lie half a per cent apart, which keeps their mean within -100 dB of exact.
+// Rows are laid over the element fraction (kinks in the taper cost nothing), closer together towards both ends, where the
+// sections of the pot become short circuits: fraction = p^4 / (p^4 + (1 - p)^4), p = row / (rows - 1). Where the time
+// constant of a section passes the length of a sample the steps bend most; there the rows lie half a per cent apart, which
+// keeps their mean within -100 dB of exact.
+//
+// A row holds three steps that end at its position: of a knob that stands there, and of one that arrives there rising or
+// falling at full speed. A position and speed between them take the weighted mean. (A knob frozen for a sample, or
+// for half of one, has no lag where the circuit's time constants are shorter than that, and misses -80 dB.)
+//
+// Every step is a contraction in the energy norm, so every mean of them is one too: no motion of the knob can make stored
+// energy grow. Full speed is that of a full turn in 50 ms where the taper is steepest; faster motion is taken at full speed:
+// bounded and without clicks, but near only.
 #pragma once
 
 #include <vector>
@@ -14,6 +21,12 @@
 
 namespace unsoldered {
 
+/// Where a knob is, for the table.
+struct KnobPlace {
+  double row = 0;       // number of the row below; the fraction is the share of the next
+  double fraction = 0;  // RB/RT, 0..1
+};
+
 class StepTable {
  public:
   /// Setup thread. Throws InputError when the hookup has no such knob or the network no solution.
@@ -21,8 +34,11 @@ class StepTable {
 
   const RowLayout& layout() const noexcept { return layout_; }
 
-  /// Row number, with the share of the next row as its fraction, of a dial 0..10. Audio thread.
-  double position(double dial) const noexcept;
+  /// Of a dial 0..10. Audio thread.
+  KnobPlace place(double dial) const noexcept;
+
+  /// Speed of a knob that went from one place to another within a sample, -1..1 of full speed. Audio thread.
+  double speed(const KnobPlace& from, const KnobPlace& to) const noexcept;
 
   /// All rows, layout().size numbers each, one row past the last position. Audio thread.
   const double* rows() const noexcept { return data_.data(); }
@@ -31,7 +47,8 @@ class StepTable {
   RowLayout layout_;
   Pot pot_;
   bool open_at_ten_ = false;
-  int rows_ = 0;  // without the one for the disconnected no-load position
+  int rows_ = 0;           // without the one for the disconnected no-load position
+  double full_speed_ = 0;  // fraction a sample
   std::vector<double> data_;
 };
 

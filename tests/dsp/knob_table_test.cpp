@@ -84,8 +84,7 @@ TEST_CASE("Treble lost is the loss of 2-5 kHz against 200-800 Hz, other bands wh
     NodalAnalysis analysis(hookup_network(hookup, dial));
     double sum = 0;
     constexpr int points = 20000;
-    for (int i = 0; i < points; ++i)
-      sum += std::norm(analysis.value(from * std::pow(to / from, (i + 0.5) / points)));
+    for (int i = 0; i < points; ++i) sum += std::norm(analysis.value(from * std::pow(to / from, (i + 0.5) / points)));
     return 10 * std::log10(sum / points);
   };
   const double lost = mean_db(10, 2000, 5000) - mean_db(10, 200, 800) - mean_db(7, 2000, 5000) + mean_db(7, 200, 800);

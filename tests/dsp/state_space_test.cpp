@@ -64,7 +64,7 @@ TEST_CASE("The state space has the response of nodal analysis for random network
   }
 }
 
-TEST_CASE("Every position dissipates in one and the same norm, and each exact half step contracts") {
+TEST_CASE("Every position dissipates in one and the same norm, and each exact step contracts") {
   std::mt19937 random(11);
   for (int i = 0; i < 40; ++i) {
     const StateSpaceFamily family(hookup_network(random_hookup(random)), 0);
@@ -75,8 +75,8 @@ TEST_CASE("Every position dissipates in one and the same norm, and each exact ha
       const LongMatrix symmetric = space.a + space.a.transpose();
       const Eigen::SelfAdjointEigenSolver<LongMatrix> solver(symmetric, Eigen::EigenvaluesOnly);
       CHECK(solver.eigenvalues().maxCoeff() <= Long(1e-15) * space.a.norm());
-      const HalfSteps steps = half_steps(space, 48000);
-      const LongMatrix product = steps.transition.transpose() * steps.transition;
+      const Step<Long> step = exact_step(space, 1 / Long(48000));
+      const LongMatrix product = step.transition.transpose() * step.transition;
       const Eigen::SelfAdjointEigenSolver<LongMatrix> squares(product, Eigen::EigenvaluesOnly);
       CHECK(squares.eigenvalues().maxCoeff() <= 1 + Long(1e-12));
     }
@@ -105,22 +105,29 @@ TEST_CASE("Natural frequencies of a bare pickup are its resonance 1/(2 pi sqrt(L
   CHECK_THAT(*std::max_element(natural.begin(), natural.end()), WithinAbs(undamped, undamped * 1e-3));
 }
 
-TEST_CASE("A half step of a first-order circuit is exp(-t/RC), and its drive is that of the moments") {
+TEST_CASE("The step of a first-order circuit is exp(-t/RC), and its drive is that of the moments") {
   StateSpace space;
   space.a = LongMatrix::Constant(1, 1, -2 * std::numbers::pi_v<Long> * 1000);
   space.b = LongVector::Constant(1, 2 * std::numbers::pi_v<Long> * 1000);
   space.c = LongRow::Constant(1, 1);
-  const HalfSteps steps = half_steps(space, 48000);
-  // Step-invariant pole of a 1 kHz low-pass at 48 kHz is 0.877305769098 (formula: Oppenheim & Schafer), here over a half.
-  CHECK_THAT(static_cast<double>(steps.transition(0, 0)), WithinAbs(std::sqrt(0.877305769098), 1e-11));
+  const Step<Long> step = exact_step(space, 1 / Long(48000));
+  // Step-invariant pole of a 1 kHz low-pass at 48 kHz is 0.877305769098 (formula: Oppenheim & Schafer).
+  CHECK_THAT(static_cast<double>(step.transition(0, 0)), WithinAbs(0.877305769098, 1e-11));
+  const Drive<Long> drive = step.drive * chebyshev_powers<Long>(0, 1);
   // A constant input, moment 0 alone: what decay loses the drive gives.
-  CHECK_THAT(static_cast<double>(steps.transition(0, 0) + steps.first_drive(0, 0)), WithinAbs(1, 1e-15));
-  CHECK_THAT(static_cast<double>(steps.first_drive(0, 0) - steps.second_drive(0, 0)), WithinAbs(0, 1e-15));
-  // A ramp from -1 to 1 over the sample, moment 1: the ramp-invariant form over the whole sample.
-  const Long whole = steps.transition(0, 0) * steps.first_drive(0, 1) + steps.second_drive(0, 1);
-  const double b0 = 0.062685119831;  // ramp-invariant low-pass, fs 48 kHz, fc 1 kHz: formula in Franklin, Powell & Workman
+  CHECK_THAT(static_cast<double>(step.transition(0, 0) + drive(0, 0)), WithinAbs(1, 1e-15));
+  // A ramp from -1 to 1 over the sample, moment 1: the ramp-invariant form.
+  const double b0 =
+      0.062685119831;  // ramp-invariant low-pass, fs 48 kHz, fc 1 kHz: formula in Franklin, Powell & Workman
   const double b1 = 0.060009111071;
-  CHECK_THAT(static_cast<double>(whole), WithinAbs(b0 - b1, 1e-11));
+  CHECK_THAT(static_cast<double>(drive(0, 1)), WithinAbs(b0 - b1, 1e-11));
+  // Two half spans, each with its own part of the same nine polynomials, are the whole.
+  const Step<double> half = exact_step_in_double(space, 1 / Long(96000));
+  const Drive<double> both =
+      half.transition * half.drive * chebyshev_powers(0.0, 0.5) + half.drive * chebyshev_powers(0.5, 0.5);
+  CHECK((both - drive.cast<double>()).norm() < 1e-12);
+  const Step<double> twice = doubled(half);
+  CHECK((twice.drive * chebyshev_powers(0.0, 1.0) - drive.cast<double>()).norm() < 1e-12);
 }
 
 TEST_CASE("The interpolated curve follows sines to 20 kHz and keeps the samples") {

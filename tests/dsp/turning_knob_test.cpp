@@ -1,0 +1,167 @@
+// A turning knob against the same circuit in 64 exact steps a sample. The input is the same interpolated curve, so what is
+// left is the error of the table and its mixing alone; against ngspice, whole, see tests/reference/turn_render_test.py.
+#include <algorithm>
+#include <cmath>
+#include <numbers>
+
+#include "dsp/exact_step.h"
+#include "dsp/hookup_network.h"
+#include "dsp/interpolator.h"
+#include "dsp/moving_pot_filter.h"
+#include "tests/catch.h"
+#include "tests/dsp/example_hookups.h"
+
+using namespace unsoldered;
+using namespace unsoldered::test;
+
+namespace {
+
+using Samples = std::vector<double>;
+
+struct Comparison {
+  double error_db = 0;
+  double step_ratio = 0;  // largest sample-to-sample step, as a ratio to the reference's
+};
+
+Samples sines_to_18k(int frames, double rate_hz) {
+  std::mt19937 random(29);
+  Samples take(static_cast<std::size_t>(frames));
+  for (int i = 1; i <= 24; ++i) {
+    const double phase = std::uniform_real_distribution<double>(0, 2 * std::numbers::pi)(random);
+    for (std::size_t n = 0; n < take.size(); ++n)
+      take[n] += std::sin(2 * std::numbers::pi * 750 * i / rate_hz * static_cast<double>(n) + phase) / 24;
+  }
+  return take;
+}
+
+/// dial(t) in samples of the output; compared from `first` to `last`.
+template <typename Dial>
+Comparison compare(const Hookup& hookup, double rate_hz, int first, int last, const Dial& dial) {
+  constexpr int parts = 64;
+  const int frames = last + 1;
+  const Samples take = sines_to_18k(frames, rate_hz);
+  const Interpolator interpolator(rate_hz);
+  const int latency = interpolator.latency();
+  const int taps = interpolator.taps();
+
+  MovingPotFilter filter(hookup, Knob::volume, rate_hz, 1);
+  Samples dials(take.size());
+  for (std::size_t n = 0; n < dials.size(); ++n) dials[n] = dial(static_cast<double>(n));
+  Samples got(take.size());
+  const double* in = take.data();
+  double* out = got.data();
+  filter.process(&in, &out, frames, dials.data());
+
+  const Network network = hookup_network(hookup);
+  const StateSpaceFamily family(network, 0);
+  const Pot& pot = network.pots[0].pot;
+  std::vector<Polynomials<double>> powers;
+  for (int k = 0; k < parts; ++k) powers.push_back(chebyshev_powers(static_cast<double>(k) / parts, 1.0 / parts));
+  Eigen::VectorXd state = Eigen::VectorXd::Zero(family.states());
+  const auto step_at = [&](double position) {
+    return exact_step_in_double(family.at(element_fraction(pot, position)), 1 / static_cast<Long>(rate_hz * parts));
+  };
+  double error = 0;
+  double power = 0;
+  double got_step = 0;
+  double due_step = 0;
+  double due_before = 0;
+  Step<double> step;
+  double stepped_at = -1;
+  for (int n = 0; n < frames; ++n) {
+    Eigen::Matrix<double, Interpolator::moments, 1> moment = Eigen::Matrix<double, Interpolator::moments, 1>::Zero();
+    for (int p = 0; p < Interpolator::moments; ++p)
+      for (int k = 0; k < taps; ++k)
+        if (const int i = n - taps + 1 + k; i >= 0)
+          moment(p) += interpolator.weight(p, k) * take[static_cast<std::size_t>(i)];
+    for (int k = 0; k < parts; ++k) {
+      const double position = n == 0 ? dial(0) : dial(n - 1 + (k + 0.5) / parts);
+      if (position != stepped_at) step = step_at(position);
+      stepped_at = position;
+      state = step.transition * state + step.drive * (powers[static_cast<std::size_t>(k)] * moment);
+    }
+    const StateSpace end = family.at(element_fraction(pot, dial(n)));
+    const double direct = n >= latency ? take[static_cast<std::size_t>(n - latency)] : 0;
+    const double due = (end.c.cast<double>() * state).value() + static_cast<double>(end.d) * direct;
+    const auto i = static_cast<std::size_t>(n);
+    if (n >= first) {
+      error += (got[i] - due) * (got[i] - due);
+      power += due * due;
+      if (n > first) {
+        got_step = std::max(got_step, std::abs(got[i] - got[i - 1]));
+        due_step = std::max(due_step, std::abs(due - due_before));
+      }
+    }
+    due_before = due;
+  }
+  return {10 * std::log10(error / power), got_step / due_step};
+}
+
+std::vector<NamedHookup> hard_hookups() {
+  std::vector<NamedHookup> all = example_hookups();
+  Hookup piezo = piezo_hookup();
+  piezo.source.capacitance_f = 1.2e-9;
+  piezo.source.leak_ohm = 50e6;
+  piezo.volume.pot.taper = parse_taper("audio 20%");
+  piezo.cable = Cable{300e-12, {}};
+  all.push_back({"piezo, audio", piezo});
+  Hookup line = line_hookup(100, 10e3, 10e3);
+  line.volume.pot.taper = parse_taper("audio 15%");
+  line.cable = Cable{2.2e-9, {}};
+  all.push_back({"line, audio, 2.2 nF", line});
+  Hookup filtered = pickup_hookup();
+  filtered.volume.pot.taper = parse_taper("ideal audio 15%");
+  Tone tone;
+  tone.pot.total_ohm = 250e3;
+  tone.pot.taper = parse_taper("linear");
+  tone.capacitor_f = 10e-9;
+  tone.dial = 3;
+  tone.position = TonePosition::output;
+  filtered.tone = tone;
+  all.push_back({"ideal audio, tone at the output", filtered});
+  Hookup reverse = line_hookup(600, 50e3, 22e3);
+  reverse.source.capacitance_f = 1e-6;
+  reverse.volume.pot.taper = parse_taper("ideal reverse audio 15%");
+  reverse.volume.pot.end_ohm = 20;
+  reverse.treble_bleed = TrebleBleed{1e-9, {}, {}, {}};
+  reverse.cable = Cable{1e-9, {}};
+  all.push_back({"line through 1 uF, ideal reverse, bleed", reverse});
+  return all;
+}
+
+}  // namespace
+
+TEST_CASE("Full turns up and down, in 50 and in 130 ms, are within -80 dB of fine exact steps", "[slow]") {
+  double worst_db = -300;
+  for (const NamedHookup& example : hard_hookups()) {
+    for (const bool up : {true, false}) {
+      for (const double seconds : {0.05, 0.13}) {
+        const double rate = up ? 44100 : 48000;
+        const double turn = seconds * rate;
+        const Comparison found = compare(example.hookup, rate, 100, 100 + static_cast<int>(turn), [&](double n) {
+          const double share = std::clamp((n - 100) / turn, 0.0, 1.0);
+          return 10 * (up ? share : 1 - share);
+        });
+        INFO(example.name << (up ? ", up" : ", down") << " in " << seconds << " s");
+        CHECK(found.error_db < -80);
+        CHECK(found.step_ratio < 1.001);
+        worst_db = std::max(worst_db, found.error_db);
+      }
+    }
+  }
+  WARN("worst error of a full turn: " << worst_db << " dB");
+}
+
+TEST_CASE(
+    "A jump, played as 5 ms, is near: within -40 dB of fine exact steps, without a larger step than theirs by 1 %") {
+  double worst_db = -300;
+  for (const NamedHookup& example : hard_hookups()) {
+    const Comparison found = compare(example.hookup, 48000, 100, 600,
+                                     [&](double n) { return 2 + 8 * std::clamp((n - 200) / 240, 0.0, 1.0); });
+    INFO(example.name << ": " << found.error_db << " dB");
+    CHECK(found.error_db < -40);
+    CHECK(found.step_ratio < 1.01);
+    worst_db = std::max(worst_db, found.error_db);
+  }
+  WARN("worst error of a jump: " << worst_db << " dB");
+}
