@@ -15,11 +15,13 @@
 
 #include <vector>
 
+#include "dsp/kernels.h"
+
 namespace unsoldered {
 
 class Interpolator {
  public:
-  static constexpr int moments = 9;
+  static constexpr int moments = moment_count;
 
   explicit Interpolator(double rate_hz);
 

@@ -30,6 +30,10 @@ void ring(const Modes& modes, const double* input, int frames, double* re, doubl
   (is_wide ? wide::ring : plain::ring)(modes, input, frames, re, im, out);
 }
 
+void table_rows(const double* fractions, int frames, double last_row, double* rows) noexcept {
+  (is_wide ? wide::table_rows : plain::table_rows)(fractions, frames, last_row, rows);
+}
+
 void turn(const TurnInput& input, int frames, double* work, double* state, double* out) noexcept {
   (is_wide ? wide::turn : plain::turn)(input, frames, work, state, out);
 }

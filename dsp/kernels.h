@@ -4,6 +4,9 @@
 
 namespace unsoldered {
 
+/// Chebyshev moments of a sample interval, see interpolator.h.
+inline constexpr int moment_count = 9;
+
 /// Where the parts of a row of a step table lie; columns of matrices are contiguous and padded to a multiple of four.
 /// Three steps of equal layout come first: knob standing, arriving rising, arriving falling.
 struct RowLayout {
@@ -35,14 +38,16 @@ struct Modes {
 };
 void ring(const Modes& modes, const double* input, int frames, double* re, double* im, double* out) noexcept;
 
+/// rows[n]: where fractions[n] (0..1) lies among rows 0..last_row of a step table, see step_table.h.
+void table_rows(const double* fractions, int frames, double last_row, double* rows) noexcept;
+
 /// One channel of a moving-pot filter. rows[n] is the table row (its fraction: share of the next) at the end of sample n,
 /// rows[-1] that at the start of the first; speeds[n] is the knob's speed within it, -1..1 (0: standing).
-/// interval_moments[p * stride + n], direct_input[n]. work: one row and one state.
+/// interval_moments[p * stride + n], direct_input[n]. work: one row.
 /// state[padded] is kept between calls. out[n] = output of the state at the end of sample n.
 struct TurnInput {
   const double* table;
   RowLayout layout;
-  int moments;
   const double* rows;
   const double* speeds;
   const double* interval_moments;

@@ -16,15 +16,16 @@ struct MovingPotFilter::State {
 
   Interpolator interpolator;
   StepTable table;
-  std::vector<History> history;  // by channel
-  std::vector<double> states;    // channels x padded
-  std::vector<double> moments;   // Interpolator::moments x block
-  std::vector<double> work;      // for the kernel: a row and a state
-  std::vector<double> rows;      // of the knob, one a frame
-  std::vector<double> speeds;    // one a frame
-  KnobPlace place;               // at the last frame
-  double dial = 0;               // at the last frame
-  bool at_rest = true;           // nothing played yet: the first dial is where the knob has always been
+  std::vector<History> history;   // by channel
+  std::vector<double> states;     // channels x padded
+  std::vector<double> moments;    // Interpolator::moments x block
+  std::vector<double> work;       // for the kernel: a row
+  std::vector<double> rows;       // of the knob, one a frame
+  std::vector<double> speeds;     // one a frame
+  std::vector<double> fractions;  // of the element, one a frame
+  double fraction = 0;            // at the last frame
+  double dial = 0;                // at the last frame
+  bool at_rest = true;            // nothing played yet: the first dial is where the knob has always been
 
   State(const Hookup& hookup, Knob knob, double rate_hz, int channels)
       : interpolator(rate_hz), table(hookup, knob, rate_hz) {
@@ -32,7 +33,8 @@ struct MovingPotFilter::State {
     history.assign(count, History(interpolator.taps(), block));
     states.assign(count * static_cast<std::size_t>(table.layout().padded), 0);
     moments.assign(static_cast<std::size_t>(Interpolator::moments) * block, 0);
-    work.assign(static_cast<std::size_t>(table.layout().size + table.layout().padded), 0);
+    work.assign(static_cast<std::size_t>(table.layout().size), 0);
+    fractions.assign(block, 0);
     rows.assign(block, 0);
     speeds.assign(block, 0);
   }
@@ -40,17 +42,18 @@ struct MovingPotFilter::State {
   void follow(const double* dials, int frames) noexcept {
     if (at_rest) {
       dial = dials[0];
-      place = table.place(dial);
+      fraction = table.fraction(dial);
       at_rest = false;
     }
     for (int n = 0; n < frames; ++n) {
       const auto i = static_cast<std::size_t>(n);
-      const KnobPlace before = place;
-      if (dials[n] != dial) place = table.place(dials[n]);
+      const double before = fraction;
+      if (dials[n] != dial) fraction = table.fraction(dials[n]);
       dial = dials[n];
-      rows[i] = place.row;
-      speeds[i] = table.speed(before, place);
+      fractions[i] = fraction;
+      speeds[i] = table.speed(before, fraction);
     }
+    table.rows_at(dials, fractions.data(), frames, rows.data());
   }
 
   void process(const double* in, double* out, int frames, std::size_t channel) noexcept {
@@ -59,7 +62,6 @@ struct MovingPotFilter::State {
     interpolator.process(past.newest(), frames, moments.data(), block);
     const TurnInput input{table.rows(),
                           table.layout(),
-                          Interpolator::moments,
                           rows.data(),
                           speeds.data(),
                           moments.data(),

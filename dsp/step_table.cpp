@@ -40,10 +40,10 @@ double fraction_of(double place) {
   return up / (up + std::pow(1 - place, 4));
 }
 
-double row_of(double fraction) noexcept {
-  const double up = std::sqrt(std::sqrt(fraction));
-  const double down = std::sqrt(std::sqrt(1 - fraction));
-  return up / (up + down) * (row_count - 1);
+double row_of(double fraction) {
+  double row = 0;
+  table_rows(&fraction, 1, row_count - 1, &row);
+  return row;
 }
 
 std::size_t moving_pot(const Network& network, Knob knob) {
@@ -102,7 +102,7 @@ class SpanSteps {
 
 }  // namespace
 
-StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(row_count) {
+StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) {
   const Network network = hookup_network(hookup);
   const std::size_t moving = moving_pot(network, knob);
   const StateSpaceFamily family(network, moving);
@@ -112,10 +112,11 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(ro
                      ": leave out extra capacitors and inductors");
   layout_ = row_layout(family.states());
   pot_ = network.pots[moving].pot;
-  full_speed_ = full_speed_per_s(pot_) / rate_hz;
+  const double full_speed = full_speed_per_s(pot_) / rate_hz;  // fraction a sample
+  samples_at_full_speed_ = 1 / full_speed;
   open_at_ten_ = network.pots[moving].open_at_ten;
   const auto size = static_cast<std::size_t>(layout_.size);
-  data_.assign(size * static_cast<std::size_t>(rows_ + 2), 0);
+  data_.assign(size * static_cast<std::size_t>(row_count + 2), 0);
   const auto row_data = [&](int row) { return data_.data() + size * static_cast<std::size_t>(row); };
   const auto write_output = [&](const StateSpace& space, double* row) {
     for (int i = 0; i < layout_.states; ++i) row[layout_.output + i] = static_cast<double>(space.c(i));
@@ -124,9 +125,9 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(ro
 
   const Long shortest_s = std::ldexp(Long(1) / rate_hz, -halvings);
   std::vector<Step<double>> shortest;
-  shortest.reserve(static_cast<std::size_t>(rows_));
-  for (int i = 0; i < rows_; ++i) {
-    const StateSpace space = family.at(fraction_of(static_cast<double>(i) / (rows_ - 1)));
+  shortest.reserve(static_cast<std::size_t>(row_count));
+  for (int i = 0; i < row_count; ++i) {
+    const StateSpace space = family.at(fraction_of(static_cast<double>(i) / (row_count - 1)));
     write_output(space, row_data(i));
     shortest.push_back(exact_step_in_double(space, shortest_s));
   }
@@ -136,10 +137,10 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(ro
   Step<double> span{Matrix<double>(layout_.states, layout_.states), Drive<double>(layout_.states, moments)};
   const auto put_before = [&](double start, double length) {
     const Polynomials<double> powers = chebyshev_powers(start, length);
-    for (int i = 0; i < rows_; ++i) {
-      const double fraction = fraction_of(static_cast<double>(i) / (rows_ - 1));
+    for (int i = 0; i < row_count; ++i) {
+      const double fraction = fraction_of(static_cast<double>(i) / (row_count - 1));
       for (const int direction : {1, -1}) {
-        const double passed = (1 - start - length / 2) * full_speed_ * direction;
+        const double passed = (1 - start - length / 2) * full_speed * direction;
         spans.at(row_of(std::clamp(fraction - passed, 0.0, 1.0)), span);
         RowStep later(layout_, row_data(i) + (direction > 0 ? 1 : 2) * layout_.step);
         if (start + length == 1) {
@@ -162,13 +163,13 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(ro
     spans.double_span();
   }
   const Polynomials<double> whole = chebyshev_powers(0.0, 1.0);
-  for (int i = 0; i < rows_; ++i) {
+  for (int i = 0; i < row_count; ++i) {
     RowStep still(layout_, row_data(i));
     still.transition = spans.row(i).transition;
     still.drive = spans.row(i).drive.lazyProduct(whole);
   }
 
-  double* last = row_data(rows_);
+  double* last = row_data(row_count);
   if (open_at_ten_) {
     const StateSpace space = family.disconnected();
     write_output(space, last);
@@ -183,14 +184,17 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) : rows_(ro
   }
 }
 
-KnobPlace StepTable::place(double dial) const noexcept {
-  const double fraction = std::clamp(element_fraction(pot_, dial), 0.0, 1.0);
-  if (open_at_ten_ && dial >= 10) return {static_cast<double>(rows_), fraction};
-  return {row_of(fraction), fraction};
+double StepTable::fraction(double dial) const noexcept { return std::clamp(element_fraction(pot_, dial), 0.0, 1.0); }
+
+void StepTable::rows_at(const double* dials, const double* fractions, int frames, double* rows) const noexcept {
+  table_rows(fractions, frames, row_count - 1, rows);
+  if (!open_at_ten_) return;
+  for (int n = 0; n < frames; ++n)
+    if (dials[n] >= 10) rows[n] = row_count;
 }
 
-double StepTable::speed(const KnobPlace& from, const KnobPlace& to) const noexcept {
-  return std::clamp((to.fraction - from.fraction) / full_speed_, -1.0, 1.0);
+double StepTable::speed(double from, double to) const noexcept {
+  return std::clamp((to - from) * samples_at_full_speed_, -1.0, 1.0);
 }
 
 }  // namespace unsoldered

@@ -21,12 +21,6 @@
 
 namespace unsoldered {
 
-/// Where a knob is, for the table.
-struct KnobPlace {
-  double row = 0;       // number of the row below; the fraction is the share of the next
-  double fraction = 0;  // RB/RT, 0..1
-};
-
 class StepTable {
  public:
   /// Setup thread. Throws InputError when the hookup has no such knob or the network no solution.
@@ -34,21 +28,23 @@ class StepTable {
 
   const RowLayout& layout() const noexcept { return layout_; }
 
-  /// Of a dial 0..10. Audio thread.
-  KnobPlace place(double dial) const noexcept;
+  /// Element fraction RB/RT of a dial 0..10. Audio thread, as all below.
+  double fraction(double dial) const noexcept;
 
-  /// Speed of a knob that went from one place to another within a sample, -1..1 of full speed. Audio thread.
-  double speed(const KnobPlace& from, const KnobPlace& to) const noexcept;
+  /// Row numbers (their fraction: the share of the next row) of dials and their element fractions.
+  void rows_at(const double* dials, const double* fractions, int frames, double* rows) const noexcept;
 
-  /// All rows, layout().size numbers each, one row past the last position. Audio thread.
+  /// Speed of a knob that went from one element fraction to another within a sample, -1..1 of full speed.
+  double speed(double from, double to) const noexcept;
+
+  /// All rows, layout().size numbers each, one row past the last position.
   const double* rows() const noexcept { return data_.data(); }
 
  private:
   RowLayout layout_;
   Pot pot_;
   bool open_at_ten_ = false;
-  int rows_ = 0;           // without the one for the disconnected no-load position
-  double full_speed_ = 0;  // fraction a sample
+  double samples_at_full_speed_ = 0;  // to pass the whole element
   std::vector<double> data_;
 };
 
