@@ -359,8 +359,8 @@ Taper parse_taper(std::string_view text) {
   }
   const bool log_word = rest.rfind("log", 0) == 0 || rest.rfind("antilog", 0) == 0 || rest.rfind("exp", 0) == 0;
   throw InputError(shown(text) + " is not the name of a law; accepted are " + std::string(kNames) +
-                   (log_word ? ". What a catalogue calls log is usually \"audio 15%\" or \"audio 10%\"" : "") +
-                   ", { sections = [[0,0], …, [1,1]] } and { measured = \"file.csv\" }");
+                   ", { sections = [[0,0], …, [1,1]] } and { measured = \"file.csv\" }" +
+                   (log_word ? "; what a catalogue calls log is usually \"audio 15%\" or \"audio 10%\"" : ""));
 }
 
 bool is_taper_letter(std::string_view text) {

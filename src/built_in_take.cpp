@@ -70,8 +70,8 @@ std::vector<double> pluck(std::size_t period, double strength, std::uint32_t see
 /// The string's loop: delay line, two-point average weighted (1 - s, s), loss factor, all-pass for the fraction of a
 /// sample (paper, "Tuning" and "Decay Alteration").
 void add_string(const Note& note, std::uint32_t seed, std::vector<double>& phrase) {
-  constexpr double kAverage = 0.07;      // s: small, so that high partials last
-  constexpr double kRingSeconds = 5.0;   // to -60 dB at the fundamental of key 40, shorter higher up
+  constexpr double kAverage = 0.07;     // s: small, so that high partials last
+  constexpr double kRingSeconds = 5.0;  // to -60 dB at the fundamental of key 40, shorter higher up
   constexpr double kReleaseSeconds = 0.06;
   const double frequency_hz = 440 * std::exp2((note.key - 69) / 12.0);
   const double ring_s = kRingSeconds * std::exp2((40 - note.key) / 24.0);
@@ -128,9 +128,7 @@ const std::vector<double>& built_in_phrase() {
   return phrase;
 }
 
-TakeFormat BuiltInTake::format() const noexcept {
-  return {kRateHz, 1, kPhraseFrames};
-}
+TakeFormat BuiltInTake::format() const noexcept { return {kRateHz, 1, kPhraseFrames}; }
 
 int BuiltInTake::read(double* interleaved, int frames) {
   const auto& phrase = built_in_phrase();

@@ -10,11 +10,12 @@ namespace {
 std::atomic<bool> signal_came{false};
 static_assert(std::atomic<bool>::is_always_lock_free, "a signal handler may only touch lock-free atomics");
 
+constexpr int kAsks[] = {SIGINT, SIGTERM, SIGHUP};  // Ctrl-C, a polite kill, a terminal that was closed
+
 extern "C" void note_signal(int) {
   signal_came.store(true, std::memory_order_relaxed);
   // A second signal ends the program at once: whoever asks twice does not want to wait for the tidying.
-  std::signal(SIGINT, SIG_DFL);
-  std::signal(SIGTERM, SIG_DFL);
+  for (const int number : kAsks) std::signal(number, SIG_DFL);
 }
 
 }  // namespace
@@ -24,12 +25,14 @@ void watch_for_interrupt() {
   action.sa_handler = note_signal;
   action.sa_flags = SA_RESTART;  // reads and writes under way are finished; the flag is polled between them
   sigemptyset(&action.sa_mask);
-  for (const int number : {SIGINT, SIGTERM}) {
+  for (const int number : kAsks) {
     struct sigaction before {};
     // A signal ignored from outside (nohup, a background job of a shell script) stays ignored.
     if (sigaction(number, nullptr, &before) == 0 && before.sa_handler == SIG_IGN) continue;
     sigaction(number, &action, nullptr);
   }
+  // A file larger than the user's limit is then an error of its write, not the end of the program with half a file.
+  std::signal(SIGXFSZ, SIG_IGN);
 }
 
 bool interrupted() noexcept { return signal_came.load(std::memory_order_relaxed); }

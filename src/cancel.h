@@ -5,7 +5,7 @@ namespace unsoldered {
 
 struct Interrupted {};
 
-/// Installs the handler for SIGINT and SIGTERM. Main thread, once.
+/// Installs the handler for SIGINT, SIGTERM and SIGHUP, and lets the file size limit be an error. Main thread, once.
 void watch_for_interrupt();
 
 /// True after the first signal. Any thread.

@@ -39,6 +39,16 @@ std::string random_token() {
 
 std::string in_quotes(const fs::path& path) { return "'" + path.string() + "'"; }
 
+/// Status 2 when the name itself is wrong, 3 when the system does not grant it.
+[[noreturn]] void refuse_folder(const fs::path& folder, const std::error_code& error) {
+  const std::string text = "--out " + in_quotes(folder) + ": cannot make the folder: " + error.message();
+  if (error == std::errc::filename_too_long) throw InputError(text + "; give a shorter name");
+  if (error == std::errc::not_a_directory) {
+    throw InputError(text + " (a part of this path is a file); give another folder");
+  }
+  throw CannotError(text + "; " + write_advice(error.value()));
+}
+
 }  // namespace
 
 ClipFolder::ClipFolder(fs::path folder, std::vector<std::string> names, bool force, const std::vector<fs::path>& inputs)
@@ -63,7 +73,7 @@ void ClipFolder::check(const std::vector<fs::path>& inputs) const {
   std::error_code error;
   const auto about = fs::status(folder_, error);
   if (error && about.type() == fs::file_type::none) {
-    throw CannotError("--out " + in_quotes(folder_) + ": " + error.message());
+    refuse_folder(folder_, error);
   }
   if (!fs::exists(about)) return;
   if (!fs::is_directory(about)) {
@@ -76,12 +86,13 @@ void ClipFolder::check(const std::vector<fs::path>& inputs) const {
     if (!fs::exists(target_about)) continue;
     for (const fs::path& input : inputs) {
       if (fs::equivalent(target, input, error)) {
-        throw InputError("--out " + in_quotes(folder_) + ": " + in_quotes(name) + " there is the input " + in_quotes(input) +
-                         " itself, which is never overwritten; give another folder");
+        throw InputError("--out " + in_quotes(folder_) + ": " + in_quotes(name) + " there is the input " +
+                         in_quotes(input) + " itself, which is never overwritten; give another folder");
       }
     }
     if (fs::is_directory(target_about)) {
-      throw InputError("--out " + in_quotes(folder_) + ": " + in_quotes(name) + " there is a folder; give another folder");
+      throw InputError("--out " + in_quotes(folder_) + ": " + in_quotes(name) +
+                       " there is a folder; give another folder");
     }
     existing += (existing.empty() ? "" : ", ") + name;
   }
@@ -103,7 +114,7 @@ void ClipFolder::create() {
   for (const fs::path& at : missing) {
     std::error_code error;
     if (fs::create_directory(at, error)) created_.push_back(at);
-    if (error) throw CannotError("--out " + in_quotes(folder_) + ": cannot make the folder: " + error.message());
+    if (error) refuse_folder(folder_, error);
   }
 }
 
@@ -115,7 +126,8 @@ void ClipFolder::discard(std::size_t index) const noexcept { ::unlink(temporary(
 
 void ClipFolder::write(std::size_t index, const std::string& text) const {
   const auto fail = [&](int error) {
-    throw CannotError("cannot write " + in_quotes(folder_ / names_[index]) + ": " + system_text(error));
+    throw CannotError("cannot write " + in_quotes(folder_ / names_[index]) + ": " + system_text(error) + "; " +
+                      write_advice(error));
   };
   FileHandle file(::open(temporary(index).c_str(), O_WRONLY | O_CREAT | O_EXCL | O_CLOEXEC, 0666));
   if (file.get() < 0) fail(errno);
@@ -149,7 +161,9 @@ void ClipFolder::publish(std::size_t index) const {
   if (error == EEXIST) {
     throw InputError(in_quotes(target) + " has appeared meanwhile; give another folder, or --force to replace it");
   }
-  if (error != 0) throw CannotError("cannot write " + in_quotes(target) + ": " + system_text(error));
+  if (error != 0) {
+    throw CannotError("cannot write " + in_quotes(target) + ": " + system_text(error) + "; " + write_advice(error));
+  }
 }
 
 ClipFolder::~ClipFolder() {

@@ -59,10 +59,11 @@ Depth parse_depth(const std::string& text, const std::string& where) {
 
 ClipWriter::ClipWriter(const std::filesystem::path& path, std::string name, TakeFormat format, Depth depth)
     : name_(std::move(name)),
+      folder_(path.parent_path()),
       descriptor_(::open(path.c_str(), O_RDWR | O_CREAT | O_EXCL | O_CLOEXEC, 0666)),
       channels_(format.channels),
       depth_(depth) {
-  if (descriptor_.get() < 0) failed(system_text(errno));
+  if (descriptor_.get() < 0) failed_in_system(errno);
   for (int channel = 0; channel < channels_; ++channel) {
     dither_.emplace_back(dither_seed(name_ + '/' + std::to_string(channel)));
   }
@@ -71,7 +72,7 @@ ClipWriter::ClipWriter(const std::filesystem::path& path, std::string name, Take
   info.channels = format.channels;
   info.format = sound_format(format, depth);
   sound_.reset(sf_open_fd(descriptor_.get(), SFM_WRITE, &info, SF_FALSE));
-  if (!sound_) failed(sf_strerror(nullptr));
+  if (!sound_) failed(std::string("because ") + sf_strerror(nullptr));
   sf_command(sound_.get(), SFC_SET_CLIPPING, nullptr, SF_TRUE);
   sf_command(sound_.get(), SFC_SET_ADD_PEAK_CHUNK, nullptr, SF_FALSE);
   if ((info.format & SF_FORMAT_TYPEMASK) == SF_FORMAT_RF64) {
@@ -110,7 +111,8 @@ void ClipWriter::write_integers(const double* const* channels, int frames, doubl
   if (!finite) refuse(channels, frames, gain);
   peak_ = std::max(peak_, most / scale);
   const auto size = static_cast<sf_count_t>(bytes_.size());
-  if (sf_write_raw(sound_.get(), bytes_.data(), size) != size) failed(sf_strerror(sound_.get()));
+  errno = 0;
+  if (sf_write_raw(sound_.get(), bytes_.data(), size) != size) failed_in_system(errno);
 }
 
 bool ClipWriter::quantise(const double* from, double factor, double scale, std::size_t channel) noexcept {
@@ -150,15 +152,17 @@ void ClipWriter::write_floats(const double* const* channels, int frames, double 
   }
   if (!finite) refuse(channels, frames, gain);
   peak_ = std::max(peak_, static_cast<double>(most));
-  if (sf_writef_float(sound_.get(), floats_.data(), frames) != frames) failed(sf_strerror(sound_.get()));
+  errno = 0;
+  if (sf_writef_float(sound_.get(), floats_.data(), frames) != frames) failed_in_system(errno);
 }
 
 void ClipWriter::close() {
   // The header with the final sizes. sf_close writes it too, but does not tell why that failed.
+  errno = 0;
   sf_command(sound_.get(), SFC_UPDATE_HEADER_NOW, nullptr, 0);
-  if (sf_error(sound_.get()) != SF_ERR_NO_ERROR) failed(sf_strerror(sound_.get()));
-  if (sf_close(sound_.release()) != SF_ERR_NO_ERROR) failed("the file could not be completed");
-  if (!descriptor_.close()) failed(system_text(errno));
+  if (sf_error(sound_.get()) != SF_ERR_NO_ERROR) failed_in_system(errno);
+  if (sf_close(sound_.release()) != SF_ERR_NO_ERROR) failed_in_system(errno);
+  if (!descriptor_.close()) failed_in_system(errno);
 }
 
 void ClipWriter::refuse(const double* const* channels, int frames, double gain) const {
@@ -166,15 +170,20 @@ void ClipWriter::refuse(const double* const* channels, int frames, double gain) 
     for (int channel = 0; channel < channels_; ++channel) {
       const double value = channels[channel][i] * gain;
       if (std::isfinite(static_cast<float>(value))) continue;
-      failed("sample " + std::to_string(frames_written_ + i) + " of channel " + std::to_string(channel + 1) +
+      failed("because sample " + std::to_string(frames_written_ + i) + " of channel " + std::to_string(channel + 1) +
              " came out as " + format_number(value) + ", which no file should hold");
     }
   }
-  failed("a sample came out that is not a finite number");
+  failed("because a sample came out that is not a finite number");
+}
+
+void ClipWriter::failed_in_system(int error) const {
+  const std::string told = sound_ ? sf_strerror(sound_.get()) : "the file could not be completed";
+  failed("in '" + folder_.string() + "': " + (error != 0 ? system_text(error) : told) + "; " + write_advice(error));
 }
 
 void ClipWriter::failed(const std::string& reason) const {
-  throw CannotError("cannot write '" + name_ + "': " + reason);
+  throw CannotError("cannot write '" + name_ + "' " + reason);
 }
 
 }  // namespace unsoldered

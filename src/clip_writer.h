@@ -44,9 +44,11 @@ class ClipWriter {
   void write_floats(const double* const* channels, int frames, double gain);
   [[noreturn]] void refuse(const double* const* channels, int frames, double gain) const;
   [[noreturn]] void failed(const std::string& reason) const;
+  [[noreturn]] void failed_in_system(int error) const;  // errno; 0: not known
 
   std::string name_;
-  FileHandle descriptor_;  // outlives sound_
+  std::filesystem::path folder_;  // for messages
+  FileHandle descriptor_;         // outlives sound_
   SoundHandle sound_;
   int channels_;
   Depth depth_;

@@ -21,6 +21,11 @@ double parse_dial(std::string_view text, std::string_view where) {
 }
 
 std::vector<double> parse_dials(std::string_view text, std::string_view where) {
+  if (text.find(';') != std::string_view::npos) {
+    throw InputError(std::string(where) + ": \"" + std::string(text) +
+                     "\" is not a dial position, nor a list of them; write numbers from 0 to 10 with a comma between "
+                     "them, such as 10,7.5,3");
+  }
   std::vector<double> dials;
   for (;;) {
     const auto comma = text.find(',');

@@ -284,14 +284,33 @@ Hookup read_blocks(const TomlDocument& document, const std::filesystem::path& fo
   return hookup;
 }
 
+/// The files named by the keys "measured" of a table, wherever they stand in it.
+void add_measured(const toml::node& node, const std::filesystem::path& folder,
+                  std::vector<std::filesystem::path>& files) {
+  if (const toml::array* list = node.as_array()) {
+    for (const toml::node& entry : *list) add_measured(entry, folder, files);
+  }
+  const toml::table* table = node.as_table();
+  if (table == nullptr) return;
+  for (const auto& [key, value] : *table) {
+    const auto* name = value.as_string();
+    if (key == "measured" && name != nullptr) files.push_back(folder / name->get());
+    add_measured(value, folder, files);
+  }
+}
+
+TomlDocument parse_with_settings(const std::string& toml, const std::string& name,
+                                 const std::vector<std::string>& settings) {
+  TomlDocument document = parse_toml(toml, name);
+  for (const std::string& setting : settings) apply_setting(document, setting);
+  return document;
+}
+
 }  // namespace
 
 Hookup parse_hookup(const std::string& toml, const std::string& name, const std::filesystem::path& folder,
                     const std::vector<std::string>& settings) {
-  TomlDocument document = parse_toml(toml, name);
-  for (const std::string& setting : settings) {
-    apply_setting(document, setting);
-  }
+  const TomlDocument document = parse_with_settings(toml, name, settings);
   Hookup hookup = read_blocks(document, folder);
   try {
     validate(hookup);
@@ -303,6 +322,13 @@ Hookup parse_hookup(const std::string& toml, const std::string& name, const std:
 
 Hookup read_hookup(const std::filesystem::path& file, const std::vector<std::string>& settings) {
   return parse_hookup(read_small_file(file), file.string(), file.parent_path(), settings);
+}
+
+std::vector<std::filesystem::path> files_of_hookup(const std::filesystem::path& file,
+                                                   const std::vector<std::string>& settings) {
+  std::vector<std::filesystem::path> files = {file};
+  add_measured(parse_with_settings(read_small_file(file), file.string(), settings).root, file.parent_path(), files);
+  return files;
 }
 
 }  // namespace unsoldered

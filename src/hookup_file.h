@@ -17,4 +17,18 @@ Hookup read_hookup(const std::filesystem::path& file, const std::vector<std::str
 Hookup parse_hookup(const std::string& toml, const std::string& name, const std::filesystem::path& folder,
                     const std::vector<std::string>& settings = {});
 
+/// The files that are read for a hookup: the file itself and those of measured tapers. Throws as read_hookup does.
+std::vector<std::filesystem::path> files_of_hookup(const std::filesystem::path& file,
+                                                   const std::vector<std::string>& settings = {});
+
+/// compute(), whose refusal of the network (one without a solution) then names the file.
+template <typename Compute>
+auto of_hookup(const std::filesystem::path& file, const Compute& compute) {
+  try {
+    return compute();
+  } catch (const InputError& error) {
+    throw InputError(file.string() + ": " + error.what());
+  }
+}
+
 }  // namespace unsoldered

@@ -2,9 +2,11 @@
 
 #include <optional>
 #include <string>
+#include <utility>
 
 #include "dsp/error.h"
 #include "src/hookup_measured.h"
+#include "src/number_text.h"
 
 namespace unsoldered {
 namespace {
@@ -43,14 +45,18 @@ std::vector<TaperPoint> read_sections(const TomlBlock& block) {
 Taper read_taper_table(const TomlBlock& block, const std::filesystem::path& folder) {
   block.allow_only({"sections", "measured"});
   if (block.has("sections") == block.has("measured")) {
+    if (block.has("sections")) {
+      block.refuse("measured", "stands beside sections, and both give the law; take one of them out");
+    }
     block.refuse_missing("sections", "one of sections = [[0,0], …, [1,1]] and measured = \"file.csv\"");
   }
-  try {
-    if (block.has("sections")) {
-      return Taper::sections(read_sections(block));
+  if (block.has("sections")) {
+    std::vector<TaperPoint> corners = read_sections(block);
+    try {
+      return Taper::sections(std::move(corners));
+    } catch (const InputError& error) {
+      block.refuse("sections", error.what());
     }
-  } catch (const InputError& error) {
-    block.refuse("sections", error.what());
   }
   const std::string file = block.text("measured", "the name of a CSV file");
   try {
@@ -123,7 +129,9 @@ void read_dead_travel(const TomlBlock& block, Pot& pot) {
     pot.dead_cw_deg = block.number_of("dead_travel", (*ends)[1], kDeadTravel);
   }
   if (!(pot.dead_ccw_deg + pot.dead_cw_deg < pot.travel_deg)) {
-    block.refuse("dead_travel", "both ends together take up the whole travel; accepted is a sum below the travel");
+    block.refuse("dead_travel", format_number(pot.dead_ccw_deg) + " and " + format_number(pot.dead_cw_deg) +
+                                    " degrees take up the whole travel of " + format_number(pot.travel_deg) +
+                                    " degrees; accepted is a sum below the travel");
   }
 }
 

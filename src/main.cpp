@@ -5,6 +5,7 @@
 #include <new>
 
 #include "dsp/error.h"
+#include "src/call_error.h"
 #include "src/cancel.h"
 #include "src/verb.h"
 
@@ -60,11 +61,12 @@ int main(int argc, char** argv) {
   } catch (const CLI::ParseError& error) {
     const auto chosen = app.get_subcommands();
     const std::string verb = chosen.empty() ? "" : " " + chosen.front()->get_name();
-    std::cerr << "unsoldered" << verb << ": " << error.what() << "; see unsoldered" << verb << " --help\n";
+    std::cerr << "unsoldered" << verb << ": " << unsoldered::call_error_text(app, error) << '\n';
     return exit_wrong_input;
   }
   if (!action) {
-    std::cerr << app.help();
+    std::cerr << app.help()
+              << "\nunsoldered: no verb given; begin with one of those above, such as unsoldered render --help\n";
     return exit_wrong_input;
   }
   return run_action(action, app.get_subcommands().front()->get_name());

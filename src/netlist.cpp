@@ -38,10 +38,10 @@ std::string netlist_text(const Hookup& hookup, double dial) {
     const bool wire = branch.kind == BranchKind::resistor && branch.value == 0;
     if (wire && wired.together(branch.a, branch.b)) continue;  // a loop of wires would have no one current
     if (wire) wired.join(branch.a, branch.b);
-    const char letter = wire                                     ? 'V'
-                        : branch.kind == BranchKind::resistor    ? 'R'
-                        : branch.kind == BranchKind::capacitor   ? 'C'
-                                                                 : 'L';
+    const char letter = wire                                   ? 'V'
+                        : branch.kind == BranchKind::resistor  ? 'R'
+                        : branch.kind == BranchKind::capacitor ? 'C'
+                                                               : 'L';
     deck += letter + std::to_string(number) + " " + node_text(network, branch.a) + " " + node_text(network, branch.b) +
             " " + exact_number(branch.value) + " $ " + branch.name + "\n";
   }

@@ -45,12 +45,23 @@ class Knobbed {
   std::optional<MovingPotFilter> moving_;
 };
 
+/// A network without a solution is the hookup's fault, not the take's: the caller may want to say whose.
+Knobbed make_filter(const Hookup& hookup, const KnobMotion& motion, const TakeFormat& format) {
+  try {
+    return {hookup, motion, format};
+  } catch (const HookupError&) {
+    throw;
+  } catch (const InputError& error) {
+    throw HookupError("", error.what());
+  }
+}
+
 }  // namespace
 
 std::int64_t play_through(Take& take, const Hookup& hookup, const KnobMotion& motion, const BlockSink& sink) {
   const TakeFormat format = take.format();
   const auto channels = static_cast<std::size_t>(format.channels);
-  Knobbed filter(hookup, motion, format);
+  Knobbed filter = make_filter(hookup, motion, format);
 
   std::vector<double> interleaved(channels > 1 ? channels * kBlockFrames : 0);
   std::vector<std::vector<double>> in(channels, std::vector<double>(kBlockFrames));

@@ -21,8 +21,8 @@ using KnobMotion = std::variant<double, TurningKnob>;
 using BlockSink = std::function<bool(const double* const* channels, int frames)>;
 
 /// Frames out line up with frames in: the filter's latency is cut off the front and made up with silence at the end.
-/// Memory does not depend on the length. One thread. Throws InputError (network without
-/// a solution, damaged take), CannotError, and whatever `sink` throws. Returns the number of frames given to `sink`.
+/// Memory does not depend on the length. One thread. Throws HookupError (network without
+/// a solution), InputError (damaged take), CannotError, and whatever `sink` throws. Returns the number of frames given to `sink`.
 std::int64_t play_through(Take& take, const Hookup& hookup, const KnobMotion& motion, const BlockSink& sink);
 
 }  // namespace unsoldered

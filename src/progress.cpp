@@ -55,8 +55,7 @@ void Progress::show(std::int64_t now_ms) {
   const auto total = static_cast<double>(total_.load(std::memory_order_relaxed));
   if (!(total > 0)) return;
   const auto done = static_cast<double>(done_.load(std::memory_order_relaxed));
-  const std::string line =
-      kEraseLine + progress_line(label_, done, total, static_cast<double>(now_ms) / 1000);
+  const std::string line = kEraseLine + progress_line(label_, done, total, static_cast<double>(now_ms) / 1000);
   const std::lock_guard lock(mutex_);
   std::fputs(line.c_str(), stream_);
   std::fflush(stream_);

@@ -94,7 +94,11 @@ void render_clip(std::size_t index, Clip& clip, Shared& shared, const std::stop_
     stop_if_interrupted();
     return !stop.stop_requested();
   };
-  play_through(*take, clip.hookup->hookup, clip.motion, sink);
+  try {
+    play_through(*take, clip.hookup->hookup, clip.motion, sink);
+  } catch (const HookupError& error) {
+    throw InputError(clip.hookup->file.string() + ": " + error.what());
+  }
   if (stop.stop_requested() || shared.too_loud) return;
   writer.close();
   clip.written_peak = writer.peak();
@@ -106,9 +110,8 @@ double render_set(std::vector<Clip>& clips, const RenderRequest& request, const 
   const auto count = static_cast<std::int64_t>(clips.size());
   const auto run = [&](Shared& shared) {
     progress.expect(count * take_frames);
-    run_tasks(clips.size(), request.jobs, [&](std::size_t index, std::stop_token stop) {
-      render_clip(index, clips[index], shared, stop);
-    });
+    run_tasks(clips.size(), request.jobs,
+              [&](std::size_t index, std::stop_token stop) { render_clip(index, clips[index], shared, stop); });
   };
   Shared first{request, folder, progress};
   first.has_ceiling = request.depth != Depth::float32;
@@ -137,7 +140,10 @@ RenderResult render(const RenderRequest& request, Progress& progress) {
   names.emplace_back("clips.csv");
   std::vector<fs::path> inputs;
   if (request.take != kBuiltInTake) inputs.emplace_back(request.take);
-  for (const RenderHookup& hookup : request.hookups) inputs.push_back(hookup.file);
+  for (const RenderHookup& hookup : request.hookups) {
+    inputs.push_back(hookup.file);
+    inputs.insert(inputs.end(), hookup.inputs.begin(), hookup.inputs.end());
+  }
   ClipFolder folder(request.folder, names, request.force, inputs);
   folder.create();
 

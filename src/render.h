@@ -15,14 +15,15 @@
 namespace unsoldered {
 
 struct RenderHookup {
-  std::filesystem::path file;  // names the clips; never overwritten
+  std::filesystem::path file;  // names the clips
   Hookup hookup;
+  std::vector<std::filesystem::path> inputs = {};  // what else was read for it; neither is ever overwritten
 };
 
 struct RenderRequest {
   std::string take;  // a file, or "built-in"
   std::vector<RenderHookup> hookups;
-  std::vector<double> dials;      // used when no knob turns
+  std::vector<double> dials;  // used when no knob turns
   std::optional<KnobTurn> turn;
   std::filesystem::path folder;
   Depth depth = Depth::pcm24;

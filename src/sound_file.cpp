@@ -29,7 +29,7 @@ FileHandle open_for_reading(const std::filesystem::path& path) {
     if (error == ENOENT || error == ENOTDIR || error == ELOOP || error == ENAMETOOLONG) {
       throw InputError(text + "; give a WAV or FLAC file, or the word built-in");
     }
-    throw CannotError(text);
+    throw CannotError(text + (error == EACCES ? "; check the permissions of the file and its folder" : ""));
   }
   struct stat about {};
   if (::fstat(file.get(), &about) != 0) throw CannotError("take '" + path.string() + "': " + system_text(errno));
@@ -37,30 +37,29 @@ FileHandle open_for_reading(const std::filesystem::path& path) {
     throw InputError("take '" + path.string() + "': is a folder; give a WAV or FLAC file in it");
   }
   if (!S_ISREG(about.st_mode)) {
-    throw InputError("take '" + path.string() +
-                     "': is not a regular file, and a take may have to be read more than once; save it to a file first");
+    throw InputError(
+        "take '" + path.string() +
+        "': is not a regular file, and a take may have to be read more than once; save it to a file first");
   }
   return file;
 }
 
+/// Of the container or of the coding, whichever part of a format code is given.
 std::string format_name(int format) {
   SF_FORMAT_INFO info{};
-  info.format = format & SF_FORMAT_TYPEMASK;
+  info.format = format;
   if (sf_command(nullptr, SFC_GET_FORMAT_INFO, &info, sizeof info) != 0 || info.name == nullptr) return "other";
   return info.name;
 }
 
+bool is_wav(int format) {
+  const int container = format & SF_FORMAT_TYPEMASK;
+  return container == SF_FORMAT_WAV || container == SF_FORMAT_WAVEX || container == SF_FORMAT_RF64;
+}
+
 bool is_accepted(int format) {
-  switch (format & SF_FORMAT_TYPEMASK) {
-    case SF_FORMAT_FLAC:
-      return true;
-    case SF_FORMAT_WAV:
-    case SF_FORMAT_WAVEX:
-    case SF_FORMAT_RF64:
-      break;
-    default:
-      return false;
-  }
+  if ((format & SF_FORMAT_TYPEMASK) == SF_FORMAT_FLAC) return true;
+  if (!is_wav(format)) return false;
   switch (format & SF_FORMAT_SUBMASK) {
     case SF_FORMAT_PCM_U8:
     case SF_FORMAT_PCM_16:
@@ -87,8 +86,7 @@ std::string range_text(int low, int high, const char* unit) {
 
 }  // namespace
 
-SoundFileTake::SoundFileTake(const std::filesystem::path& path)
-    : path_(path), descriptor_(open_for_reading(path)) {
+SoundFileTake::SoundFileTake(const std::filesystem::path& path) : path_(path), descriptor_(open_for_reading(path)) {
   const std::string where = "take '" + path_.string() + "': ";
   const auto missing = missing_wav_bytes(descriptor_.get());
   SF_INFO info{};
@@ -98,12 +96,15 @@ SoundFileTake::SoundFileTake(const std::filesystem::path& path)
                      " Give a WAV or FLAC file, or the word built-in");
   }
   if (!is_accepted(info.format)) {
-    throw InputError(where + "is a file of the kind \"" + format_name(info.format) +
-                     "\" or coded in an unusual way; a take is WAV (8 to 32 bits or float) or FLAC, so convert it first");
+    const std::string coding =
+        is_wav(info.format) ? ", coded as \"" + format_name(info.format & SF_FORMAT_SUBMASK) + "\", which is unusual"
+                            : "";
+    throw InputError(where + "is a file of the kind \"" + format_name(info.format & SF_FORMAT_TYPEMASK) + "\"" +
+                     coding + "; a take is WAV (8 to 32 bits or float) or FLAC, so convert it first");
   }
   if (info.channels < 1 || info.channels > kMaxChannels) {
     throw InputError(where + std::to_string(info.channels) + " channels; accepted are " +
-                     range_text(1, kMaxChannels, " channels"));
+                     range_text(1, kMaxChannels, " channels") + ", so mix it down or split it first");
   }
   if (info.samplerate < kMinRateHz || info.samplerate > kMaxRateHz) {
     throw InputError(where + "sample rate " + std::to_string(info.samplerate) + " Hz; accepted are " +
@@ -116,8 +117,8 @@ SoundFileTake::SoundFileTake(const std::filesystem::path& path)
   floating_ = is_floating(info.format);
   if (missing) {
     warning_ = where + "is cut short: the header promises " + std::to_string(*missing) +
-               " bytes of sound more than there are; using the " + format_number(static_cast<double>(info.frames) / info.samplerate) +
-               " s that are there";
+               " bytes of sound more than there are; using the " +
+               format_number(static_cast<double>(info.frames) / info.samplerate) + " s that are there";
   }
 }
 
@@ -128,7 +129,8 @@ int SoundFileTake::read(double* interleaved, int frames) {
     const bool failed = sf_error(sound_.get()) != SF_ERR_NO_ERROR;
     if (failed || frames_read_ < format_.frames) {
       throw InputError("take '" + path_.string() + "': damaged or cut short: it can be read up to sample " +
-                       std::to_string(frames_read_) + (format_.frames > 0 ? " of " + std::to_string(format_.frames) : "") +
+                       std::to_string(frames_read_) +
+                       (format_.frames > 0 ? " of " + std::to_string(format_.frames) : "") +
                        (failed ? std::string(" (") + sf_strerror(sound_.get()) + ")" : "") +
                        "; get a whole copy, or save the good part as a file of its own");
     }

@@ -61,9 +61,14 @@ std::string json_text(const Table& table) {
   return json + "\n]\n";
 }
 
-void print_table(const Table& table, bool json) {
-  std::cout << (json ? json_text(table) : csv_text(table)) << std::flush;
-  if (!std::cout) throw CannotError("standard output cannot be written (disk full or a closed pipe)");
+void print_text(const std::string& text) {
+  std::cout << text << std::flush;
+  if (!std::cout) {
+    throw CannotError(
+        "standard output cannot be written (disk full or a closed pipe); send it to a file where there is room");
+  }
 }
+
+void print_table(const Table& table, bool json) { print_text(json ? json_text(table) : csv_text(table)); }
 
 }  // namespace unsoldered

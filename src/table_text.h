@@ -21,7 +21,10 @@ std::string csv_text(const Table& table);
 /// Empty cells and what is not finite are null.
 std::string json_text(const Table& table);
 
-/// The table in the form asked for, on standard output. Throws CannotError when that cannot be written.
+/// Text on standard output. Throws CannotError when that cannot be written.
+void print_text(const std::string& text);
+
+/// The table in the form asked for, on standard output. Throws CannotError.
 void print_table(const Table& table, bool json);
 
 }  // namespace unsoldered

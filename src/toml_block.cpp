@@ -96,13 +96,13 @@ void TomlBlock::allow_only(const std::vector<std::string_view>& keys, const std:
       continue;
     }
     const std::string_view near = nearest(name, keys);
-    std::string why = "not a key known here";
+    std::string why = "not a key known here; a";
     if (std::find(misplaced.begin(), misplaced.end(), name) != misplaced.end()) {
-      why = reason;
+      why = std::string(reason) + "; a";
     } else if (!near.empty()) {
-      why += "; was " + in_quotes(near) + " meant?";
+      why = "not a key known here; was " + in_quotes(near) + " meant? A";
     }
-    refuse(name, why + "; accepted are " + quoted_list(keys));
+    refuse(name, why + "ccepted are " + quoted_list(keys));
   }
 }
 
@@ -117,13 +117,16 @@ double TomlBlock::quantity_of(std::string_view key, const toml::node& value, Uni
   } catch (const InputError& error) {
     refuse(key, error.what());
   }
-  refuse_type(key, value, "a value such as \"" + format_quantity(range.high, unit) + "\" or a number");
+  refuse_type(key, value,
+              "a value in double quotes from " + format_quantity(range.low, unit) + " to " +
+                  format_quantity(range.high, unit) + ", or a bare number");
 }
 
 double TomlBlock::quantity(std::string_view key, Unit unit, Range range) const {
   const toml::node* value = find(key);
   if (value == nullptr) {
-    refuse_missing(key, "from " + format_quantity(range.low, unit) + " to " + format_quantity(range.high, unit));
+    refuse_missing(key,
+                   "a value from " + format_quantity(range.low, unit) + " to " + format_quantity(range.high, unit));
   }
   return quantity_of(key, *value, unit, range);
 }

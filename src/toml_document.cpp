@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <array>
+#include <cerrno>
 #include <charconv>
 #include <fstream>
 #include <optional>
@@ -12,6 +13,7 @@
 
 #include "dsp/error.h"
 #include "src/number_text.h"
+#include "src/system_text.h"
 
 namespace unsoldered {
 namespace {
@@ -50,6 +52,24 @@ toml::table parse_table(std::string_view text, const std::string& source_name, s
                      ": more than 32 dots in one key or sentence; no file of ours nests that deep, shorten it");
   }
   return toml::parse(text, source_name);
+}
+
+std::string without_control_letters(std::string_view text) {
+  std::string out;
+  for (const char c : text) {
+    const auto code = static_cast<unsigned char>(c);
+    out += code < 0x20 || code == 0x7f ? '?' : c;
+  }
+  return out;
+}
+
+/// The next step for what the parser says.
+std::string toml_advice(std::string_view what) {
+  const auto says = [&](std::string_view words) { return what.find(words) != std::string_view::npos; };
+  if (says("utf-8")) return "a hookup is plain text: save it as UTF-8, and check that this is the right file";
+  if (says("parsing string")) return "correct this line; is a double quote missing at the end of a text?";
+  if (says("redefine")) return "a key or block stands here twice; correct this line or take it out";
+  return "correct this line (text values stand in double quotes)";
 }
 
 std::vector<std::string> key_parts(std::string_view key) {
@@ -176,23 +196,23 @@ void put(toml::node& parent, const std::string& part, toml::node& value, const s
 
 std::string in_quotes(std::string_view text) {
   constexpr std::size_t longest = 80;
-  std::string out = "\"";
-  for (char c : text.substr(0, longest)) {
-    const auto code = static_cast<unsigned char>(c);
-    out += code < 0x20 || code == 0x7f ? '?' : c;
-  }
-  return out + (text.size() > longest ? "\xE2\x80\xA6\"" : "\"");
+  return '"' + without_control_letters(text.substr(0, longest)) + (text.size() > longest ? "\xE2\x80\xA6\"" : "\"");
 }
 
 std::string read_small_file(const std::filesystem::path& file) {
   const std::string name = file.string();
+  if (name.empty()) {
+    throw InputError("\"\": there is no such file, the file name is empty; give one");
+  }
   std::error_code error;
   const std::filesystem::file_status status = std::filesystem::status(file, error);
   if (status.type() == std::filesystem::file_type::not_found) {
     throw InputError(name + ": there is no such file; check the name and the folder");
   }
   if (error) {
-    throw InputError(name + ": cannot be looked at (" + error.message() + "); check the permissions of the folder");
+    const bool too_long = error == std::errc::filename_too_long;
+    throw InputError(name + ": cannot be looked at (" + error.message() + "); check the " +
+                     (too_long ? "name" : "permissions of the folder"));
   }
   if (std::filesystem::is_directory(status)) {
     throw InputError(name + ": is a folder; name a file in it");
@@ -202,14 +222,14 @@ std::string read_small_file(const std::filesystem::path& file) {
   }
   std::ifstream stream(file, std::ios::binary);
   if (!stream) {
-    throw InputError(name + ": cannot be opened for reading; check its permissions");
+    throw CannotError(name + ": cannot be opened for reading: " + system_text(errno) + "; check its permissions");
   }
   // One byte more than allowed is read, whatever size the system reports.
   std::string text(kLargestFile + 1, '\0');
   stream.read(text.data(), static_cast<std::streamsize>(text.size()));
   text.resize(static_cast<std::size_t>(stream.gcount()));
   if (stream.bad()) {
-    throw InputError(name + ": cannot be read; check the disk it is on");
+    throw CannotError(name + ": cannot be read; check the disk it is on");
   }
   if (text.size() > kLargestFile) {
     throw InputError(name + ": is larger than 1 MiB, the most a text file of ours may have; is it the right file?");
@@ -221,9 +241,9 @@ TomlDocument parse_toml(std::string_view text, const std::string& name) {
   try {
     return {name, parse_table(text, name, name)};
   } catch (const toml::parse_error& error) {
-    const std::string what = in_quotes(error.description());
-    throw InputError(name + ":" + std::to_string(error.source().begin.line) + ": not valid TOML: " +
-                     what.substr(1, what.size() - 2) + "; correct this line (text values stand in double quotes)");
+    const std::string_view what = error.description();
+    throw InputError(name + ":" + std::to_string(error.source().begin.line) +
+                     ": not valid TOML: " + without_control_letters(what) + "; " + toml_advice(what));
   }
 }
 
@@ -232,7 +252,7 @@ void apply_setting(TomlDocument& document, const std::string& setting) {
   const std::string place = std::string(kSettingPlace) + shown.substr(1, shown.size() - 2);
   const std::size_t equals = setting.find('=');
   if (equals == std::string::npos) {
-    throw InputError(place + ": wanted is KEY=VALUE, as in --set tone.dial=4");
+    throw InputError("--set " + shown + " has no equals sign; wanted is KEY=VALUE, as in --set tone.dial=4");
   }
   const std::string key(trimmed(std::string_view(setting).substr(0, equals)));
   const std::vector<std::string> parts = key_parts(key);

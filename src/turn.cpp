@@ -23,7 +23,7 @@ void check_times(const std::vector<TurnPoint>& points, std::string_view where) {
     const double now = points[i].seconds;
     if (!(now >= 0 && now <= kLongestSeconds)) {
       throw InputError(at_time(where, now) + "is out of range; times are seconds from the start of the take, 0 to " +
-                       format_number(kLongestSeconds));
+                       format_number(kLongestSeconds) + " s");
     }
     if (!(points[i].dial >= 0 && points[i].dial <= 10)) {
       throw InputError(at_time(where, now) + "has dial " + format_number(points[i].dial) +
@@ -37,7 +37,9 @@ void check_times(const std::vector<TurnPoint>& points, std::string_view where) {
     }
     if (i < 2 || before > points[i - 2].seconds) continue;
     if (now == before) {
-      throw InputError(at_time(where, now) + "is the third at that time; at most two, which make a jump of 5 ms");
+      throw InputError(
+          at_time(where, now) +
+          "is the third at that time; at most two are accepted, which make a jump of 5 ms; move it to a later time");
     }
     if (now <= before + kJumpSeconds) {
       throw InputError(at_time(where, now) + "falls into the jump at " + format_number(before) +
@@ -56,6 +58,10 @@ Turn::Turn(std::vector<TurnPoint> points, std::string_view where) : corners_(std
 }
 
 Turn Turn::parse(std::string_view text, std::string_view where) {
+  if (text.find(';') != std::string_view::npos) {
+    throw InputError(std::string(where) + ": \"" + std::string(text) +
+                     "\" has a semicolon; write points seconds:dial with a comma between them, such as 0:0,8:10");
+  }
   std::vector<TurnPoint> points;
   for (std::string_view rest = text;;) {
     const auto comma = rest.find(',');
@@ -66,7 +72,9 @@ Turn Turn::parse(std::string_view text, std::string_view where) {
       throw InputError(std::string(where) + ": \"" + std::string(point) + "\" in \"" + std::string(text) +
                        "\" is not a point; write seconds:dial, points separated by commas, such as 0:0,8:10");
     }
-    points.push_back({*seconds, parse_dial(point.substr(colon + 1), where)});
+    points.push_back(
+        {*seconds, parse_dial(point.substr(colon + 1), std::string(where) + ": point \"" + std::string(point) +
+                                                           "\" in \"" + std::string(text) + "\"")});
     if (comma == std::string_view::npos) break;
     rest.remove_prefix(comma + 1);
   }

@@ -3,11 +3,13 @@
 #include <cstdio>
 #include <iostream>
 #include <memory>
+#include <optional>
 #include <string>
 #include <thread>
 #include <vector>
 
 #include "dsp/error.h"
+#include "src/count_option.h"
 #include "src/dial_list.h"
 #include "src/hookup_file.h"
 #include "src/progress.h"
@@ -28,7 +30,7 @@ struct RenderOptions {
   std::string folder;
   std::string format = "wav";
   std::string depth = "24";
-  int jobs = 0;  // 0: not given
+  std::optional<std::string> jobs;
   bool force = false;
   bool json = false;
 };
@@ -53,21 +55,19 @@ std::optional<KnobTurn> turn_of(const RenderOptions& options) {
     if (other.knob == turn.knob) {
       throw InputError("--turn: the " + turn.knob + " knob is given two turns; write all its points in one");
     }
-    throw InputError("--turn: the " + turn.knob + " knob and the " + other.knob +
-                     " knob cannot turn in one clip; turn one, and set the other with --set, such as --set tone.dial=4");
+    throw InputError(
+        "--turn: the " + turn.knob + " knob and the " + other.knob +
+        " knob cannot turn in one clip; turn one, and set the other with --set, such as --set tone.dial=4");
   }
   return turn;
 }
 
-int jobs_of(const CLI::Option& given, int jobs) {
-  if (given.count() == 0) return std::clamp(static_cast<int>(std::thread::hardware_concurrency()), 1, kMostJobs);
-  if (jobs < 1 || jobs > kMostJobs) {
-    throw InputError("--jobs: " + std::to_string(jobs) + " threads; accepted are 1 to " + std::to_string(kMostJobs));
-  }
-  return jobs;
+int jobs_of(const RenderOptions& options) {
+  if (options.jobs) return parse_count(*options.jobs, "--jobs", 1, kMostJobs);
+  return std::clamp(static_cast<int>(std::thread::hardware_concurrency()), 1, kMostJobs);
 }
 
-void run(const RenderOptions& options, const CLI::Option& jobs) {
+void run(const RenderOptions& options) {
   if (options.format != "wav") {
     throw InputError("--format: \"" + options.format + "\" is not a format of clips; give wav");
   }
@@ -77,9 +77,11 @@ void run(const RenderOptions& options, const CLI::Option& jobs) {
   request.turn = turn_of(options);
   request.dials = dials_of(options);
   request.folder = options.folder;
-  request.jobs = jobs_of(jobs, options.jobs);
+  request.jobs = jobs_of(options);
   request.force = options.force;
-  for (const std::string& file : options.hookups) request.hookups.push_back({file, read_hookup(file, options.settings)});
+  for (const std::string& file : options.hookups) {
+    request.hookups.push_back({file, read_hookup(file, options.settings), files_of_hookup(file, options.settings)});
+  }
 
   RenderResult result;
   {
@@ -95,47 +97,55 @@ void run(const RenderOptions& options, const CLI::Option& jobs) {
 void add_render_verb(CLI::App& app, VerbAction& action) {
   const auto options = std::make_shared<RenderOptions>();
   CLI::App* verb = app.add_subcommand(
-      "render", "Plays a take through hookups and writes what comes out: one clip for every hookup and dial position");
+      "render", "Plays a take through hookups and writes clips, one for every hookup and knob position");
   verb->add_option("TAKE", options->take, "WAV or FLAC file, or the word built-in for a phrase of plucked strings")
       ->required();
   verb->add_option("--hookup", options->hookups, "Hookup files; may be repeated")->required()->type_name("FILE");
-  verb->add_option("--dial", options->dials, "Knob positions 0 to 10, a clip for each (default 10)")
+  verb->add_option("--dial", options->dials, "Volume knob positions 0 to 10, a clip for each (default 10)")
       ->allow_extra_args(false)
       ->type_name("10,7,3");
   verb->add_option("--turn", options->turns,
-                   "The knob turns instead: seconds:dial points joined by straight lines, held before the first and after "
-                   "the last; two points at one time are a ramp of 5 ms. tone=0:10,4:0 turns the tone knob")
+                   "The knob turns instead: points seconds:dial joined by straight lines,\n"
+                   "held before the first and after the last; two points at one time are\n"
+                   "a ramp of 5 ms. tone=0:10,4:0 turns the tone knob")
       ->allow_extra_args(false)
       ->type_name("0:0,8:10");
   verb->add_option("--out", options->folder, "Folder for the clips and clips.csv; made if missing")
       ->required()
       ->type_name("FOLDER");
-  verb->add_option("--set", options->settings, "Overrides a value in every hookup, such as tone.dial=4; may be repeated")
+  verb->add_option("--set", options->settings,
+                   "Overrides a value in every hookup, such as tone.dial=4; may be repeated")
       ->allow_extra_args(false)
       ->type_name("KEY=VALUE");
   verb->add_option("--format", options->format, "File format: wav")->type_name("wav");
   verb->add_option("--depth", options->depth, "Bits a sample: 16 (dithered), 24 or float")
       ->type_name("16|24|float")
       ->capture_default_str();
-  const CLI::Option* jobs =
-      verb->add_option("--jobs", options->jobs, "Clips rendered at one time (default: one a processor core)")
-          ->type_name("N");
+  verb->add_option("--jobs", options->jobs, "Clips rendered at one time, 1 to 256 (default: one a processor core)")
+      ->type_name("N");
   verb->add_flag("--force", options->force, "Replaces clips that are already there");
   verb->add_flag("--json", options->json, "The list of clips on standard output as JSON instead of CSV");
   verb->footer(
-      "Examples:\n"
-      "  unsoldered render riff.wav --hookup 500k-audio.hookup.toml --dial 10,7,3 --out clips\n"
-      "      three clips, clips/riff_500k-audio_dial-10.00.wav and so on, and clips/clips.csv\n"
-      "  unsoldered render riff.flac --hookup a.hookup.toml b.hookup.toml --turn 0:0,8:10 --out clips\n"
-      "      both hookups with the knob going up from 0 to 10 in eight seconds\n"
-      "  unsoldered render built-in --hookup a.hookup.toml --turn tone=0:10,4:0 --depth float --out clips\n"
+      "Examples (in the source folder; not installed: ./run in place of unsoldered):\n"
+      "  unsoldered render built-in --hookup assets/demo/d-250k-linear.hookup.toml --dial 10,7,3 --out clips\n"
+      "      three clips, clips/built-in_d-250k-linear_dial-10.00.wav and so on, and clips/clips.csv\n"
+      "  unsoldered render built-in --hookup assets/demo/*.hookup.toml --turn 0:0,8:10 --out clips-up\n"
+      "      every demo hookup with the knob going up from 0 to 10 in eight seconds\n"
+      "  unsoldered render built-in --hookup assets/demo/d-250k-linear.hookup.toml --turn tone=0:10,4:0 "
+      "--out clips-tone\n"
       "      the tone knob closing over four seconds, the volume knob at 10\n"
-      "  unsoldered render riff.wav --hookup a.hookup.toml --set cable.length=\"10 m\" --out long-cable\n"
+      "  unsoldered render built-in --hookup assets/demo/d-250k-linear.hookup.toml --set cable.length=\"10 m\" "
+      "--depth float --out clips-long\n"
+      "Your own recording goes in place of built-in.\n"
       "\n"
       "Clips line up with the take: same length, rate and channels. In 16 and 24 bits a set whose loudest clip would\n"
-      "pass -1 dBFS is lowered by one common gain, given in clips.csv. The take is taken as the source's own signal.\n"
+      "pass -1 dBFS is lowered by one common gain, given in clips.csv. The take counts as the source's own signal.\n"
+      "clips.csv, also on standard output: file; hookup; dial (turn for a turning knob); gain_db; peak_dbfs, sample "
+      "peak;\n"
+      "peak_dbtp and loudness_lufs are not measured yet and empty.\n"
+      "Listening: start quietly; a clip at 10 can be far louder than one at 4.\n"
       "Exit status: 0 done, 2 the input or the call is wrong, 3 it could not be carried out, 130 interrupted.");
-  verb->callback([options, jobs, &action] { action = [options, jobs] { run(*options, *jobs); }; });
+  verb->callback([options, &action] { action = [options] { run(*options); }; });
 }
 
 }  // namespace unsoldered

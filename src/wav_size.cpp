@@ -40,7 +40,7 @@ std::optional<std::uint64_t> missing_wav_bytes(int descriptor) noexcept {
   constexpr std::uint64_t kOpen32 = 0xffffffffu;
   constexpr std::uint64_t kOpen64 = 0xffffffffffffffffu;
   constexpr int kMostChunks = 4096;  // a file made of empty chunks must not keep us busy
-  std::uint64_t long_size = 0;  // from ds64 (EBU Tech 3306), which comes first in an RF64 file
+  std::uint64_t long_size = 0;       // from ds64 (EBU Tech 3306), which comes first in an RF64 file
   std::uint64_t offset = 12;
   for (int chunk = 0; chunk < kMostChunks && read_at(descriptor, offset, 8, bytes); ++chunk) {
     std::uint64_t size = little_endian(bytes.data() + 4, 4);

@@ -23,8 +23,8 @@ double band_power(double start_s, double seconds, double from_hz, double to_hz) 
     for (std::size_t i = 0; i < count; ++i) {
       const double share = static_cast<double>(i) / static_cast<double>(count);
       const double window = 0.5 - 0.5 * std::cos(2 * std::numbers::pi * share);
-      sum += window * phrase[first + i] *
-             std::polar(1.0, -2 * std::numbers::pi * hz * static_cast<double>(i) / 48000.0);
+      sum +=
+          window * phrase[first + i] * std::polar(1.0, -2 * std::numbers::pi * hz * static_cast<double>(i) / 48000.0);
     }
     power += std::norm(sum);
   }
@@ -71,7 +71,8 @@ TEST_CASE("The built-in take starts and ends without a click and carries no dire
 TEST_CASE("The built-in take has treble to lose: 10 to 20 kHz is heard beside 200 to 800 Hz at each pluck") {
   // -40 dB: a lost octave on top would still be noticed. Where the low string and where the chord are struck.
   for (const double start_s : {0.05, 2.45, 4.85}) {
-    const double treble_db = 10 * std::log10(band_power(start_s, 0.1, 10000, 20000) / band_power(start_s, 0.1, 200, 800));
+    const double treble_db =
+        10 * std::log10(band_power(start_s, 0.1, 10000, 20000) / band_power(start_s, 0.1, 200, 800));
     CAPTURE(start_s, treble_db);
     CHECK(treble_db > -40);
   }

@@ -94,7 +94,8 @@ TEST_CASE("Clips line up with the take: its length, rate, channels and time") {
     int channels, rate_hz, frames;
   };
   // Lengths below the latency, around the block size and over several blocks.
-  for (const Case& take : {Case{1, 48000, 1}, Case{2, 44100, 20}, Case{1, 96000, 16384}, Case{3, 48000, 16385}, Case{8, 8000, 40000}}) {
+  for (const Case& take :
+       {Case{1, 48000, 1}, Case{2, 44100, 20}, Case{1, 96000, 16384}, Case{3, 48000, 16385}, Case{8, 8000, 40000}}) {
     CAPTURE(take.channels, take.rate_hz, take.frames);
     Sound sound = sine(0.5, 500, 10, take.channels, take.rate_hz);
     sound.samples.resize(static_cast<std::size_t>(take.frames) * static_cast<std::size_t>(take.channels));
@@ -315,7 +316,8 @@ TEST_CASE("A folder for the clips is made with its parents, and taken away when 
   RenderRequest request = request_for(folder / "bad.wav", folder / "new/deep/clips/");
   request.dials = {10, 9, 8, 7};
   request.jobs = 2;
-  CHECK_THAT(message_of<InputError>([&] { render(request); }), ContainsSubstring("bad.wav") && ContainsSubstring("nan"));
+  CHECK_THAT(message_of<InputError>([&] { render(request); }),
+             ContainsSubstring("bad.wav") && ContainsSubstring("nan"));
   CHECK_FALSE(fs::exists(folder / "new"));
 
   fs::create_directory(folder / "old");
@@ -395,9 +397,11 @@ TEST_CASE("Names of clips keep what is safe everywhere and letters of all langua
   CHECK(safe_name("my riff/take:2*?") == "my-riff-take-2--");
   CHECK(safe_name("a,b\"c\nd") == "a-b-c-d");
   CHECK(safe_name("Brücke 音") == "Brücke-音");
-  CHECK(safe_name("a\xff\xc3z") == "a--z");                // not UTF-8
-  CHECK(safe_name("a\xc0\xaf" "b") == "a--b");             // an overlong slash
-  CHECK(safe_name("x\xe2\x80\xae" "gpj") == "x-gpj");      // U+202E turns the reading direction
+  CHECK(safe_name("a\xff\xc3z") == "a--z");  // not UTF-8
+  CHECK(safe_name("a\xc0\xaf"
+                  "b") == "a--b");  // an overlong slash
+  CHECK(safe_name("x\xe2\x80\xae"
+                  "gpj") == "x-gpj");  // U+202E turns the reading direction
   CHECK(safe_name(".hidden") == "-hidden");
   CHECK(unsoldered::hookup_stem("a/b/500k.audio.hookup.toml") == "500k.audio");
   CHECK(unsoldered::hookup_stem("x.toml") == "x");

@@ -134,7 +134,8 @@ TEST_CASE("A FLAC take that is cut short is refused with how far it can be read"
   const std::string whole = read_text(folder / "take.flac");
   for (const double share : {0.3, 0.6, 0.99}) {
     CAPTURE(share);
-    write_text(folder / "cut.flac", whole.substr(0, static_cast<std::size_t>(share * static_cast<double>(whole.size()))));
+    write_text(folder / "cut.flac",
+               whole.substr(0, static_cast<std::size_t>(share * static_cast<double>(whole.size()))));
     CHECK_THAT(refusal(folder / "cut.flac"), ContainsSubstring("cut short") && ContainsSubstring("of 96000"));
   }
 }
@@ -198,8 +199,10 @@ TEST_CASE("Samples that no recording holds are refused with their place") {
 TEST_CASE("Integer samples are rounded to the nearest step and clipped, never wrapped") {
   const TemporaryFolder folder;
   constexpr double kStep = 0x1p-23;
-  const std::vector<double> in = {0, 0.4 * kStep, 0.6 * kStep, -0.6 * kStep, 1.5 * kStep, 2.5 * kStep, 0.5, 1.0, 1.5, -1.0, -1.5, 1e6};
-  const std::vector<double> out = {0, 0, kStep, -kStep, 2 * kStep, 2 * kStep, 0.5, 1 - kStep, 1 - kStep, -1, -1, 1 - kStep};
+  const std::vector<double> in = {0,   0.4 * kStep, 0.6 * kStep, -0.6 * kStep, 1.5 * kStep, 2.5 * kStep,
+                                  0.5, 1.0,         1.5,         -1.0,         -1.5,        1e6};
+  const std::vector<double> out = {0,   0,         kStep,     -kStep, 2 * kStep, 2 * kStep,
+                                   0.5, 1 - kStep, 1 - kStep, -1,     -1,        1 - kStep};
   CHECK(written(folder / "24.wav", Depth::pcm24, in) == out);
   CHECK(written(folder / "gain.wav", Depth::pcm24, {0.5, 1.0}, 0.25) == std::vector<double>{0.125, 0.25});
   const auto clipped = written(folder / "16.wav", Depth::pcm16, {1.5, -1.5, 3.0, -3.0});
@@ -329,7 +332,8 @@ TEST_CASE("A disk that takes no more ends a clip with the system's reason") {
   rlimit small = before;
   small.rlim_cur = 100000;  // stands for a full disk: write() fails part of the way
   REQUIRE(::setrlimit(RLIMIT_FSIZE, &small) == 0);
-  const std::string text = message_of<CannotError>([&] { written(folder / "c.wav", Depth::pcm24, std::vector<double>(50000, 0.5)); });
+  const std::string text =
+      message_of<CannotError>([&] { written(folder / "c.wav", Depth::pcm24, std::vector<double>(50000, 0.5)); });
   ::setrlimit(RLIMIT_FSIZE, &before);
   std::signal(SIGXFSZ, handler);
   CHECK_THAT(text, ContainsSubstring("clip.wav") && ContainsSubstring("File too large"));
