@@ -24,8 +24,8 @@ struct HeldPotFilter::State {
   std::vector<History> history;  // by channel
   std::vector<Decay::Memory> memory;
 
-  State(const Hookup& hookup, double dial, double rate_hz, int channels) : interpolator(rate_hz) {
-    const StateSpace space = StateSpaceFamily(hookup_network(hookup, dial)).at(0);
+  State(const Circuit& circuit, double rate_hz, int channels) : interpolator(rate_hz) {
+    const StateSpace space = StateSpaceFamily(circuit).at();
     const Step<Long> step = exact_step(space, 1 / static_cast<Long>(rate_hz));
     const LongMatrix& whole = step.transition;
     const Drive<Long> drive = step.drive * chebyshev_powers<Long>(0, 1);
@@ -52,8 +52,10 @@ struct HeldPotFilter::State {
   }
 };
 
+HeldPotFilter::HeldPotFilter(const Circuit& circuit, double rate_hz, int channels)
+    : state_(std::make_unique<State>(circuit, rate_hz, channels)) {}
 HeldPotFilter::HeldPotFilter(const Hookup& hookup, double dial, double rate_hz, int channels)
-    : state_(std::make_unique<State>(hookup, dial, rate_hz, channels)) {}
+    : HeldPotFilter(hookup_circuit(hookup, dial), rate_hz, channels) {}
 HeldPotFilter::~HeldPotFilter() = default;
 HeldPotFilter::HeldPotFilter(HeldPotFilter&&) noexcept = default;
 HeldPotFilter& HeldPotFilter::operator=(HeldPotFilter&&) noexcept = default;

@@ -4,7 +4,7 @@
 
 namespace unsoldered {
 
-HookupResponse::HookupResponse(const Hookup& hookup, double dial) : analysis_(hookup_network(hookup, dial)) {}
+HookupResponse::HookupResponse(const Hookup& hookup, double dial) : analysis_(hookup_circuit(hookup, dial)) {}
 
 std::complex<double> HookupResponse::value(double frequency_hz) { return analysis_.value(frequency_hz); }
 

@@ -21,7 +21,7 @@ class HookupResponse {
   Transfer transfer(double frequency_hz);
 
  private:
-  NodalAnalysis analysis_;
+  CircuitAnalysis analysis_;
 };
 
 }  // namespace unsoldered

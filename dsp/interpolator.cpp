@@ -11,7 +11,7 @@
 namespace unsoldered {
 namespace {
 
-constexpr double suppression_db = 92;
+constexpr double suppression_db = 120;
 constexpr double pass_hz = 20000;
 constexpr double least_pass = 0.4167;  // of the rate; above 48 kHz the pass band grows with the rate
 constexpr double most_pass = 0.4535;   // 20 kHz at 44.1 kHz; below that the pass band shrinks with the rate

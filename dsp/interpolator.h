@@ -6,7 +6,7 @@
 // series as in any numerical text.
 //
 // Pass band: to 20 kHz, but at least 0.4167 and at most 0.4535 of the rate; images from rate minus that upward are
-// suppressed by 92 dB. Content between the two edges is carried in part. Sample instants are exact.
+// suppressed by 120 dB. Content between the two edges is carried in part. Sample instants are exact.
 //
 // Cubics are followed exactly, so the images of what changes slowly vanish: a circuit that passes the images but hardly the
 // lowest frequencies themselves (a small capacitor straight to the output) would show them. Condition on the moments of the

@@ -3,4 +3,6 @@
 
 namespace unsoldered::wide {
 #include "dsp/kernels_body.inc"
+// What follows uses the vector type of the above.
+#include "dsp/fourier_body.inc"
 }  // namespace unsoldered::wide

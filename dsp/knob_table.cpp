@@ -25,14 +25,14 @@ constexpr int scan_points_a_decade = 40;
 double to_db(double power) { return 10 * std::log10(power); }
 
 /// Mean of |H|^2 over log frequency.
-double mean_power(NodalAnalysis& analysis, const Band& band) {
+double mean_power(CircuitAnalysis& analysis, const Band& band) {
   const double from = std::log(band.from_hz);
   const double to = std::log(band.to_hz);
   const auto power = [&](double log_f) { return std::norm(analysis.value(std::exp(log_f))); };
   return boost::math::quadrature::gauss_kronrod<double, 31>::integrate(power, from, to, 12, 1e-8) / (to - from);
 }
 
-double treble_balance_db(NodalAnalysis& analysis, const Listening& bands) {
+double treble_balance_db(CircuitAnalysis& analysis, const Listening& bands) {
   return to_db(mean_power(analysis, bands.treble)) - to_db(mean_power(analysis, bands.body));
 }
 
@@ -43,7 +43,7 @@ struct ScanPoint {
 
 /// A frequency scan dense enough that no corner or peak hides between two points: evenly over log f, and round every
 /// natural frequency of the network, where a narrow resonance would stand.
-std::vector<ScanPoint> scan(NodalAnalysis& analysis, const std::vector<double>& natural_hz) {
+std::vector<ScanPoint> scan(CircuitAnalysis& analysis, const std::vector<double>& natural_hz) {
   std::vector<double> hz{peak_bottom_hz, reference_hz, peak_top_hz, corner_top_hz};
   const double decades = std::log10(corner_top_hz / peak_bottom_hz);
   const int count = static_cast<int>(std::ceil(decades * scan_points_a_decade));
@@ -68,7 +68,7 @@ double root_hz(const Function& function, double low_hz, double high_hz) {
   return std::exp((bracket.first + bracket.second) / 2);
 }
 
-void find_corner(NodalAnalysis& analysis, const std::vector<ScanPoint>& points, KnobRow& row) {
+void find_corner(CircuitAnalysis& analysis, const std::vector<ScanPoint>& points, KnobRow& row) {
   const auto above = [&](const Transfer& transfer) { return transfer.level_db() - row.level_db + corner_drop_db; };
   for (std::size_t i = 1; i < points.size(); ++i) {
     if (points[i - 1].hz < reference_hz || above(points[i].transfer) > 0) continue;
@@ -77,7 +77,7 @@ void find_corner(NodalAnalysis& analysis, const std::vector<ScanPoint>& points, 
   }
 }
 
-void find_peak(NodalAnalysis& analysis, const std::vector<ScanPoint>& points, KnobRow& row) {
+void find_peak(CircuitAnalysis& analysis, const std::vector<ScanPoint>& points, KnobRow& row) {
   for (std::size_t i = 1; i < points.size() && points[i].hz <= peak_top_hz; ++i) {
     if (!(points[i - 1].transfer.slope() > 0 && points[i].transfer.slope() <= 0)) continue;
     const double hz = points[i].transfer.slope() == 0 ? points[i].hz
@@ -100,17 +100,16 @@ std::vector<double> even_dials(int steps) {
 }
 
 std::vector<KnobRow> knob_table(const Hookup& hookup, const std::vector<double>& dials) {
-  Network network = hookup_network(hookup);
   const Listening bands = listening_bands(hookup);
-  NodalAnalysis open(network);
+  CircuitAnalysis open(hookup_circuit(hookup, 10));
   const double full_balance_db = treble_balance_db(open, bands);
 
   std::vector<KnobRow> rows;
   rows.reserve(dials.size());
   for (const double dial : dials) {
-    set_dial(network, Knob::volume, dial);
-    NodalAnalysis analysis(network);
-    NodalAnalysis looking_back(without_load(network));
+    const Circuit circuit = hookup_circuit(hookup, dial);
+    CircuitAnalysis analysis(circuit);
+    NodalAnalysis looking_back(without_load(circuit));
     KnobRow row;
     row.dial = dial;
     row.degrees = degrees(hookup.volume.pot, dial);
@@ -123,7 +122,7 @@ std::vector<KnobRow> knob_table(const Hookup& hookup, const std::vector<double>&
       if (std::isfinite(full_balance_db) && std::isfinite(balance_db))
         row.treble_lost_db = full_balance_db - balance_db;
       row.treble_5k_1k_db = to_db(std::norm(analysis.value(5000))) - row.level_db;
-      const std::vector<ScanPoint> points = scan(analysis, natural_frequencies_hz(network));
+      const std::vector<ScanPoint> points = scan(analysis, natural_frequencies_hz(circuit));
       find_corner(analysis, points, row);
       find_peak(analysis, points, row);
     }

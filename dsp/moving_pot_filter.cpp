@@ -5,6 +5,7 @@
 
 #include "dsp/denormals.h"
 #include "dsp/history.h"
+#include "dsp/hookup_network.h"
 #include "dsp/interpolator.h"
 #include "dsp/kernels.h"
 #include "dsp/step_table.h"
@@ -16,25 +17,25 @@ struct MovingPotFilter::State {
 
   Interpolator interpolator;
   StepTable table;
-  std::vector<History> history;   // by channel
-  std::vector<double> states;     // channels x padded
-  std::vector<double> moments;    // Interpolator::moments x block
-  std::vector<double> work;       // for the kernel: a row
-  std::vector<double> rows;       // of the knob, one a frame
-  std::vector<double> speeds;     // one a frame
-  std::vector<double> fractions;  // of the element, one a frame
-  double fraction = 0;            // at the last frame
-  double dial = 0;                // at the last frame
-  bool at_rest = true;            // nothing played yet: the first dial is where the knob has always been
+  std::vector<History> history;  // by channel
+  std::vector<double> states;    // channels x padded
+  std::vector<double> moments;   // Interpolator::moments x block
+  std::vector<double> work;      // for the kernel: a row
+  std::vector<double> rows;      // of the knob, one a frame
+  std::vector<double> speeds;    // one a frame
+  std::vector<double> places;    // along the table, one a frame
+  double place = 0;              // at the last frame
+  double dial = 0;               // at the last frame
+  bool at_rest = true;           // nothing played yet: the first dial is where the knob has always been
 
-  State(const Hookup& hookup, Knob knob, double rate_hz, int channels)
-      : interpolator(rate_hz), table(hookup, knob, rate_hz) {
+  State(const Circuit& circuit, const Knob& knob, double rate_hz, int channels)
+      : interpolator(rate_hz), table(circuit, knob, rate_hz) {
     const auto count = static_cast<std::size_t>(channels);
     history.assign(count, History(interpolator.taps(), block));
     states.assign(count * static_cast<std::size_t>(table.layout().padded), 0);
     moments.assign(static_cast<std::size_t>(Interpolator::moments) * block, 0);
     work.assign(static_cast<std::size_t>(table.layout().size), 0);
-    fractions.assign(block, 0);
+    places.assign(block, 0);
     rows.assign(block, 0);
     speeds.assign(block, 0);
   }
@@ -42,18 +43,18 @@ struct MovingPotFilter::State {
   void follow(const double* dials, int frames) noexcept {
     if (at_rest) {
       dial = dials[0];
-      fraction = table.fraction(dial);
+      place = table.place(dial);
       at_rest = false;
     }
     for (int n = 0; n < frames; ++n) {
       const auto i = static_cast<std::size_t>(n);
-      const double before = fraction;
-      if (dials[n] != dial) fraction = table.fraction(dials[n]);
+      const double before = place;
+      if (dials[n] != dial) place = table.place(dials[n]);
       dial = dials[n];
-      fractions[i] = fraction;
-      speeds[i] = table.speed(before, fraction);
+      places[i] = place;
+      speeds[i] = table.speed(before, place);
     }
-    table.rows_at(dials, fractions.data(), frames, rows.data());
+    table.rows_at(dials, places.data(), frames, rows.data());
   }
 
   void process(const double* in, double* out, int frames, std::size_t channel) noexcept {
@@ -72,8 +73,10 @@ struct MovingPotFilter::State {
   }
 };
 
-MovingPotFilter::MovingPotFilter(const Hookup& hookup, Knob knob, double rate_hz, int channels)
-    : state_(std::make_unique<State>(hookup, knob, rate_hz, channels)) {}
+MovingPotFilter::MovingPotFilter(const Circuit& circuit, const Knob& knob, double rate_hz, int channels)
+    : state_(std::make_unique<State>(circuit, knob, rate_hz, channels)) {}
+MovingPotFilter::MovingPotFilter(const Hookup& hookup, const Knob& knob, double rate_hz, int channels)
+    : MovingPotFilter(hookup_circuit(hookup), knob, rate_hz, channels) {}
 MovingPotFilter::~MovingPotFilter() = default;
 MovingPotFilter::MovingPotFilter(MovingPotFilter&&) noexcept = default;
 MovingPotFilter& MovingPotFilter::operator=(MovingPotFilter&&) noexcept = default;

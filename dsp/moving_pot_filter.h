@@ -6,15 +6,19 @@
 #include <memory>
 
 #include "dsp/hookup.h"
+#include "dsp/network.h"
 
 namespace unsoldered {
 
 /// Planar samples, several channels, double inside.
 class MovingPotFilter {
  public:
-  /// Setup thread; allocates everything. `rate_hz` 8000..384000, `channels` >= 1. Any block size.
-  /// Throws InputError when the hookup has no such knob or the network no solution.
-  MovingPotFilter(const Hookup& hookup, Knob knob, double rate_hz, int channels);
+  /// Setup thread; allocates everything. `rate_hz` 8000..384000, `channels` >= 1. Any block size. All other knobs stay at
+  /// their dials. Throws InputError when the circuit has no such knob or no solution.
+  MovingPotFilter(const Circuit& circuit, const Knob& knob, double rate_hz, int channels);
+
+  /// Of the source that a take drives.
+  MovingPotFilter(const Hookup& hookup, const Knob& knob, double rate_hz, int channels);
   ~MovingPotFilter();
   MovingPotFilter(MovingPotFilter&&) noexcept;
   MovingPotFilter& operator=(MovingPotFilter&&) noexcept;
@@ -40,7 +44,10 @@ class MovingPotFilter {
 /// The same with every knob held: cheaper, same latency, agrees with MovingPotFilter within -100 dB.
 class HeldPotFilter {
  public:
-  /// The volume at `dial`, everything else at its own. As above otherwise.
+  /// Every knob at its dial. As above otherwise.
+  HeldPotFilter(const Circuit& circuit, double rate_hz, int channels);
+
+  /// The volume at `dial`, everything else at its own.
   HeldPotFilter(const Hookup& hookup, double dial, double rate_hz, int channels);
   ~HeldPotFilter();
   HeldPotFilter(HeldPotFilter&&) noexcept;

@@ -22,22 +22,25 @@ PotSections pot_sections(const Pot& pot, double fraction, double floor_ohm) noex
 
 bool is_open(const PotInNetwork& pot, double dial) noexcept { return pot.open_at_ten && dial >= 10; }
 
-void set_dial(Network& network, Knob knob, double dial) {
-  for (PotInNetwork& pot : network.pots)
-    if (pot.knob == knob) pot.dial = dial;
+double fraction_below(const PotInNetwork& pot, double dial) noexcept {
+  if (!pot.backwards) return element_fraction(pot.pot, dial);
+  Pot mirrored = pot.pot;
+  std::swap(mirrored.dead_ccw_deg, mirrored.dead_cw_deg);
+  return element_fraction(mirrored, 10 - dial);
 }
 
-std::vector<Branch> settle(const Network& network, std::optional<std::size_t> keep) {
+std::vector<Branch> settle(const Network& network, const std::vector<std::size_t>& keep) {
   std::vector<Branch> branches = network.branches;
   for (std::size_t i = 0; i < network.pots.size(); ++i) {
-    if (keep == i) continue;
+    if (std::find(keep.begin(), keep.end(), i) != keep.end()) continue;
     const PotInNetwork& pot = network.pots[i];
-    const PotSections sections = pot_sections(pot.pot, element_fraction(pot.pot, pot.dial));
+    const PotSections sections = pot_sections(pot.pot, fraction_below(pot, pot.dial));
     if (pot.top)
-      branches.push_back({BranchKind::resistor, *pot.top, pot.wiper, sections.top_ohm, pot.name + ", top to wiper"});
-    if (!is_open(pot, pot.dial))
       branches.push_back(
-          {BranchKind::resistor, pot.wiper, pot.bottom, sections.bottom_ohm, pot.name + ", wiper to bottom"});
+          {BranchKind::resistor, *pot.top, pot.wiper, sections.top_ohm, pot.name + ", top to wiper", pot.after_output});
+    if (!is_open(pot, pot.dial))
+      branches.push_back({BranchKind::resistor, pot.wiper, pot.bottom, sections.bottom_ohm,
+                          pot.name + ", wiper to bottom", pot.after_output});
   }
   return branches;
 }
@@ -46,34 +49,40 @@ MergedNodes merge_wires(const Network& network, const std::vector<Branch>& branc
   const std::size_t count = network.node_names.size();
   DisjointSets wired(count);
   DisjointSets reached(count);
-  reached.join(network.emf, Network::ground);
+  reached.join(network.emf, network.emf_return);
   for (const Branch& branch : branches) {
     if (branch.kind == BranchKind::resistor && std::isinf(branch.value)) continue;
     if (branch.kind == BranchKind::resistor && branch.value == 0) wired.join(branch.a, branch.b);
     reached.join(branch.a, branch.b);
   }
-  if (wired.together(network.emf, Network::ground)) {
+  if (wired.together(network.emf, network.emf_return)) {
     std::string where;
     for (const PotInNetwork& pot : network.pots)
       where += (where.empty() ? " with " : ", ") + pot.name + " at dial " + std::to_string(pot.dial).substr(0, 5);
     throw InputError("the ideal generator is short-circuited" + where +
-                     ": nothing limits its current, so the network has no solution; give the source a resistance or "
-                     "the pot an end_resistance");
+                     ": nothing limits its current, so the network has no solution; give the source (or the "
+                     "buffer's output) a resistance or the pot an end_resistance");
   }
+  // The generator's node is numbered as its return, unless it is the one at ground.
+  const bool emf_at_ground = wired.together(network.emf, Network::ground);
+  const Node hub = emf_at_ground ? network.emf : network.emf_return;
+  const Node other = emf_at_ground ? network.emf_return : network.emf;
+  const double ride = emf_at_ground ? -1 : 1;
   MergedNodes merged;
-  merged.index.assign(count, MergedNodes::is_loose);
+  merged.places.resize(count);
   std::vector<int> number(count, -1);
   for (std::size_t i = 0; i < count; ++i) {
     const Node node = static_cast<Node>(i);
     if (!reached.together(node, Network::ground)) continue;
-    const auto root = static_cast<std::size_t>(wired.find(node));
-    if (wired.together(node, Network::ground)) {
-      merged.index[i] = MergedNodes::is_ground;
-    } else if (wired.together(node, network.emf)) {
-      merged.index[i] = MergedNodes::is_emf;
+    const bool rides = wired.together(node, other);
+    const auto root = static_cast<std::size_t>(wired.find(rides ? hub : node));
+    MergedNodes::Place& place = merged.places[i];
+    place.emf = rides ? ride : 0;
+    if (wired.together(rides ? hub : node, Network::ground)) {
+      place.index = MergedNodes::is_ground;
     } else {
       if (number[root] < 0) number[root] = merged.unknowns++;
-      merged.index[i] = number[root];
+      place.index = number[root];
     }
   }
   return merged;
@@ -81,7 +90,7 @@ MergedNodes merge_wires(const Network& network, const std::vector<Branch>& branc
 
 void require_no_loose_parts(const Network& network) {
   DisjointSets reached(network.node_names.size());
-  reached.join(network.emf, Network::ground);
+  reached.join(network.emf, network.emf_return);
   for (const Branch& branch : network.branches)
     if (!std::isinf(branch.value)) reached.join(branch.a, branch.b);
   for (const PotInNetwork& pot : network.pots) {
@@ -96,6 +105,16 @@ void require_no_loose_parts(const Network& network) {
   };
   for (const Branch& branch : network.branches) check(branch.a, branch.name);
   for (const PotInNetwork& pot : network.pots) check(pot.wiper, pot.name);
+}
+
+std::vector<PotPlace> pots_of(const Circuit& circuit, const Knob& knob) {
+  std::vector<PotPlace> places;
+  for (std::size_t stage = 0; stage < circuit.stages.size(); ++stage) {
+    const std::vector<PotInNetwork>& pots = circuit.stages[stage].pots;
+    for (std::size_t pot = 0; pot < pots.size(); ++pot)
+      if (pots[pot].knob == knob) places.push_back({stage, pot});
+  }
+  return places;
 }
 
 }  // namespace unsoldered

@@ -24,15 +24,20 @@ struct Stamp {
 
   explicit Stamp(Eigen::Index size) : among(Real::Zero(size, size)), to_emf(RealVector::Zero(size)) {}
 
-  void add(int a, int b, double admittance) {
-    if (a >= 0) among(a, a) += admittance;
-    if (b >= 0) among(b, b) += admittance;
-    if (a >= 0 && b >= 0) {
-      among(a, b) -= admittance;
-      among(b, a) -= admittance;
+  void add(const MergedNodes::Place& a, const MergedNodes::Place& b, double admittance) {
+    const double emf = a.emf - b.emf;  // in the voltage from a to b, beside the two nodes'
+    if (a.index >= 0) {
+      among(a.index, a.index) += admittance;
+      to_emf(a.index) += admittance * emf;
     }
-    if (a >= 0 && b == MergedNodes::is_emf) to_emf(a) -= admittance;
-    if (b >= 0 && a == MergedNodes::is_emf) to_emf(b) -= admittance;
+    if (b.index >= 0) {
+      among(b.index, b.index) += admittance;
+      to_emf(b.index) -= admittance * emf;
+    }
+    if (a.index >= 0 && b.index >= 0) {
+      among(a.index, b.index) -= admittance;
+      among(b.index, a.index) -= admittance;
+    }
   }
 };
 
@@ -51,7 +56,7 @@ double Transfer::slope() const noexcept { return std::norm(value) == 0 ? 0 : (by
 
 struct NodalAnalysis::State {
   MergedNodes merged;
-  int observed;
+  MergedNodes::Place observed;
   Stamp conductance;
   Stamp capacitance;
   Stamp inverse_inductance;
@@ -72,12 +77,12 @@ struct NodalAnalysis::State {
         voltage(merged.unknowns),
         derivative(merged.unknowns),
         lu(merged.unknowns) {
-    if (observed == MergedNodes::is_loose)
+    if (observed.index == MergedNodes::is_loose)
       throw InputError("the network has no solution: nothing leads from the source to the grid of the load");
     for (const Branch& branch : branches) {
-      const int a = merged[branch.a];
-      const int b = merged[branch.b];
-      if (a == b || a == MergedNodes::is_loose) continue;
+      const MergedNodes::Place& a = merged[branch.a];
+      const MergedNodes::Place& b = merged[branch.b];
+      if (a.index == b.index) continue;  // joined, or across the generator, which does not mind; or both loose
       switch (branch.kind) {
         case BranchKind::resistor:
           if (branch.value > 0) conductance.add(a, b, 1 / branch.value);
@@ -131,42 +136,74 @@ NodalAnalysis::NodalAnalysis(NodalAnalysis&&) noexcept = default;
 NodalAnalysis& NodalAnalysis::operator=(NodalAnalysis&&) noexcept = default;
 
 std::complex<double> NodalAnalysis::value(double frequency_hz) {
-  if (state_->observed == MergedNodes::is_emf) return 1;
-  if (state_->observed < 0) return 0;
+  const MergedNodes::Place& at = state_->observed;
+  if (at.index < 0) return at.emf;
   state_->solve(frequency_hz);
-  return state_->voltage(state_->observed);
+  return state_->voltage(at.index) + at.emf;
 }
 
 Transfer NodalAnalysis::transfer(double frequency_hz) {
   Transfer transfer{value(frequency_hz), 0};
-  if (state_->observed < 0) return transfer;
+  if (state_->observed.index < 0) return transfer;
   state_->differentiate(frequency_hz);
-  transfer.by_omega = state_->derivative(state_->observed);
+  transfer.by_omega = state_->derivative(state_->observed.index);
   return transfer;
 }
 
 std::complex<double> NodalAnalysis::impedance(double frequency_hz) {
-  if (state_->observed < 0) return 0;
+  const int at = state_->observed.index;
+  if (at < 0) return 0;
   state_->factor(2 * std::numbers::pi * frequency_hz);
   state_->right.setZero();
-  state_->right(state_->observed) = 1;
+  state_->right(at) = 1;
   state_->voltage.noalias() = state_->lu.solve(state_->right);
   state_->require_finite(state_->voltage, frequency_hz);
-  return state_->voltage(state_->observed);
+  return state_->voltage(at);
 }
 
-Network without_load(const Network& network) {
-  Network bare = network;
+CircuitAnalysis::CircuitAnalysis(const Circuit& circuit) : gains_(circuit.gains) {
+  for (const Network& network : circuit.stages) stages_.emplace_back(network);
+}
+
+std::complex<double> CircuitAnalysis::value(double frequency_hz) {
+  std::complex<double> result = 1;
+  for (std::size_t i = 0; i < stages_.size(); ++i) result *= stages_[i].value(frequency_hz) * gains_[i];
+  return result;
+}
+
+Transfer CircuitAnalysis::transfer(double frequency_hz) {
+  Transfer result{1, 0};
+  for (std::size_t i = 0; i < stages_.size(); ++i) {
+    const Transfer stage = stages_[i].transfer(frequency_hz);
+    result.by_omega = (result.by_omega * stage.value + result.value * stage.by_omega) * gains_[i];
+    result.value *= stage.value * gains_[i];
+  }
+  return result;
+}
+
+double CircuitAnalysis::noise_resistance_ohm(double frequency_hz) {
+  double result = 0;
+  for (std::size_t i = 0; i < stages_.size(); ++i) {
+    // What came before is amplified and passes this stage; its own resistors come on top.
+    if (i > 0) result *= std::norm(gains_[i - 1] * stages_[i].value(frequency_hz));
+    result += stages_[i].impedance(frequency_hz).real();
+  }
+  return result;
+}
+
+Network without_load(const Circuit& circuit) {
+  Network bare = circuit.stages.front();
   std::erase_if(bare.branches, [](const Branch& branch) { return branch.after_output; });
+  std::erase_if(bare.pots, [](const PotInNetwork& pot) { return pot.after_output; });
   bare.grid = bare.output;
   return bare;
 }
 
-double johnson_noise_v(NodalAnalysis& analysis, double from_hz, double to_hz, double temperature_k) {
+double johnson_noise_v(CircuitAnalysis& analysis, double from_hz, double to_hz, double temperature_k) {
   // Over log f the integrand f Re Z is a few smooth humps, one a time constant or resonance.
   const auto integrand = [&](double log_f) {
     const double f = std::exp(log_f);
-    return f * analysis.impedance(f).real();
+    return f * analysis.noise_resistance_ohm(f);
   };
   const double integral = boost::math::quadrature::gauss_kronrod<double, 31>::integrate(integrand, std::log(from_hz),
                                                                                         std::log(to_hz), 12, 1e-6);

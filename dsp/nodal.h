@@ -7,6 +7,7 @@
 
 #include <complex>
 #include <memory>
+#include <vector>
 
 #include "dsp/network.h"
 
@@ -46,11 +47,28 @@ class NodalAnalysis {
   std::unique_ptr<State> state_;
 };
 
-/// The network seen back into `output` with cable and load removed, for NodalAnalysis::impedance.
-Network without_load(const Network& network);
+/// The same for a chain of networks.
+class CircuitAnalysis {
+ public:
+  /// Throws as NodalAnalysis does.
+  explicit CircuitAnalysis(const Circuit& circuit);
+
+  Transfer transfer(double frequency_hz);
+  std::complex<double> value(double frequency_hz);
+
+  /// The resistor whose thermal noise is that at the last grid, ohm; amplifiers add none.
+  double noise_resistance_ohm(double frequency_hz);
+
+ private:
+  std::vector<NodalAnalysis> stages_;
+  std::vector<double> gains_;
+};
+
+/// The circuit seen back into `output`, with cable, further stages and load removed, for NodalAnalysis::impedance.
+Network without_load(const Circuit& circuit);
 
 /// Johnson noise at the grid, V rms, from_hz..to_hz, all resistors at temperature_k.
 /// e^2 = 4 k T integral Re Z df (Nyquist 1928; k exact in the SI).
-double johnson_noise_v(NodalAnalysis& analysis, double from_hz, double to_hz, double temperature_k);
+double johnson_noise_v(CircuitAnalysis& analysis, double from_hz, double to_hz, double temperature_k);
 
 }  // namespace unsoldered

@@ -6,6 +6,8 @@
 #include <Eigen/QR>
 #include <cmath>
 #include <numbers>
+#include <optional>
+#include <utility>
 
 #include "dsp/disjoint_sets.h"
 #include "dsp/error.h"
@@ -19,12 +21,10 @@ struct Incidence {
   Long emf = 0;
 };
 
-Incidence incidence(int unknowns, int a, int b) {
-  Incidence result{LongVector::Zero(unknowns), 0};
-  if (a >= 0) result.nodes(a) += 1;
-  if (b >= 0) result.nodes(b) -= 1;
-  if (a == MergedNodes::is_emf) result.emf += 1;
-  if (b == MergedNodes::is_emf) result.emf -= 1;
+Incidence incidence(int unknowns, const MergedNodes::Place& a, const MergedNodes::Place& b) {
+  Incidence result{LongVector::Zero(unknowns), static_cast<Long>(a.emf - b.emf)};
+  if (a.index >= 0) result.nodes(a.index) += 1;
+  if (b.index >= 0) result.nodes(b.index) -= 1;
   return result;
 }
 
@@ -56,16 +56,22 @@ LongMatrix complement(const LongMatrix& span) {
 
 }  // namespace
 
-struct StateSpaceFamily::State {
-  int unknowns = 0;
-  int observed = 0;
+/// One network of the chain.
+struct StateSpaceFamily::Stage {
+  /// The two sections of a moving pot.
+  struct Sections {
+    std::optional<Incidence> top;
+    Incidence bottom;
+    double total_ohm = 0;
+  };
 
-  // Fixed resistors, and the two sections of the moving pot.
+  int unknowns = 0;
+  MergedNodes::Place observed;
+
+  // Fixed resistors, and the moving pots.
   LongMatrix conductance;
   LongVector conductance_to_emf;
-  std::optional<Incidence> top_section;
-  std::optional<Incidence> bottom_section;
-  double total_ohm = 0;
+  std::vector<Sections> sections;
 
   // v = from_state s + from_input u + free z; the states' rates are -rate_from_nodes (G v + g u) + lossless part.
   LongMatrix charge_to_nodes;   // unknowns x charges
@@ -76,23 +82,23 @@ struct StateSpaceFamily::State {
   Eigen::Index charges = 0;
   Eigen::Index fluxes = 0;
 
-  State(const Network& network, std::optional<std::size_t> moving);
-  StateSpace solve(Long top_siemens, Long bottom_siemens) const;
+  Stage(const Network& network, const std::vector<std::size_t>& moving);
+  StateSpace solve(const std::vector<PotPosition>& positions) const;
 };
 
-StateSpaceFamily::State::State(const Network& network, std::optional<std::size_t> moving) {
+StateSpaceFamily::Stage::Stage(const Network& network, const std::vector<std::size_t>& moving) {
   const std::vector<Branch> branches = settle(network, moving);
-  // The moving pot counts as connected for what hangs on nothing, never as a wire.
+  // A moving pot counts as connected for what hangs on nothing, never as a wire.
   std::vector<Branch> connections = branches;
-  if (moving) {
-    const PotInNetwork& pot = network.pots[*moving];
+  for (const std::size_t number : moving) {
+    const PotInNetwork& pot = network.pots[number];
     if (pot.top) connections.push_back({BranchKind::resistor, *pot.top, pot.wiper, pot.pot.total_ohm, pot.name});
     connections.push_back({BranchKind::resistor, pot.wiper, pot.bottom, pot.pot.total_ohm, pot.name});
   }
   const MergedNodes merged = merge_wires(network, connections);
   unknowns = merged.unknowns;
   observed = merged[network.grid];
-  if (observed == MergedNodes::is_loose)
+  if (observed.index == MergedNodes::is_loose)
     throw InputError("the network has no solution: nothing leads from the source to the grid of the load");
 
   conductance = LongMatrix::Zero(unknowns, unknowns);
@@ -106,17 +112,17 @@ StateSpaceFamily::State::State(const Network& network, std::optional<std::size_t
   std::vector<std::pair<int, int>> joined_by_rl;
 
   for (const Branch& branch : connections) {
-    const int a = merged[branch.a];
-    const int b = merged[branch.b];
+    const int a = merged[branch.a].index;
+    const int b = merged[branch.b].index;
     if (a == b || a == MergedNodes::is_loose || std::isinf(branch.value)) continue;
     if (branch.kind != BranchKind::inductor) joined_by_rc.emplace_back(a, b);
     if (branch.kind != BranchKind::capacitor) joined_by_rl.emplace_back(a, b);
     if (branch.kind == BranchKind::capacitor) joined_by_c.emplace_back(a, b);
   }
   for (const Branch& branch : branches) {
-    const int a = merged[branch.a];
-    const int b = merged[branch.b];
-    if (a == b || a == MergedNodes::is_loose) continue;
+    const MergedNodes::Place& a = merged[branch.a];
+    const MergedNodes::Place& b = merged[branch.b];
+    if (a.index == b.index) continue;  // joined, or across the generator, which does not mind; or both loose
     const Incidence at = incidence(unknowns, a, b);
     const auto value = static_cast<Long>(branch.value);
     if (branch.kind == BranchKind::resistor && branch.value > 0) {
@@ -130,18 +136,18 @@ StateSpaceFamily::State::State(const Network& network, std::optional<std::size_t
       inductances.push_back(value);
     }
   }
-  if (moving) {
-    const PotInNetwork& pot = network.pots[*moving];
-    total_ohm = pot.pot.total_ohm;
-    if (pot.top) top_section = incidence(unknowns, merged[*pot.top], merged[pot.wiper]);
-    bottom_section = incidence(unknowns, merged[pot.wiper], merged[pot.bottom]);
+  for (const std::size_t number : moving) {
+    const PotInNetwork& pot = network.pots[number];
+    Sections of_pot{{}, incidence(unknowns, merged[pot.wiper], merged[pot.bottom]), pot.pot.total_ohm};
+    if (pot.top) of_pot.top = incidence(unknowns, merged[*pot.top], merged[pot.wiper]);
+    sections.push_back(std::move(of_pot));
   }
 
   // Voltages: across capacitors (from charge), free (from Kirchhoff's current law). Of the free ones, a group held only by
   // inductors takes its level from them, which no current in a resistor depends on.
   const LongMatrix no_capacitor = floating_groups(unknowns, joined_by_c);
   const LongMatrix only_inductors = floating_groups(unknowns, joined_by_rc);
-  if (observed >= 0 && only_inductors.cols() > 0 && only_inductors.row(observed).any())
+  if (observed.index >= 0 && only_inductors.cols() > 0 && only_inductors.row(observed.index).any())
     throw InputError("the network has no solution in time: the grid of the load is held by inductors alone");
   const LongMatrix with_capacitor = complement(no_capacitor);
   free_nodes = no_capacitor * complement(no_capacitor.transpose() * only_inductors);
@@ -182,16 +188,19 @@ StateSpaceFamily::State::State(const Network& network, std::optional<std::size_t
   fluxes = moving_fluxes.cols();
 }
 
-StateSpace StateSpaceFamily::State::solve(Long top_siemens, Long bottom_siemens) const {
+StateSpace StateSpaceFamily::Stage::solve(const std::vector<PotPosition>& positions) const {
   LongMatrix g = conductance;
   LongVector g_emf = conductance_to_emf;
-  const auto add = [&](const std::optional<Incidence>& at, Long siemens) {
-    if (!at) return;
-    g += siemens * at->nodes * at->nodes.transpose();
-    g_emf += at->nodes * (at->emf * siemens);
+  const auto add = [&](const Incidence& at, Long ohm) {
+    const Long siemens = 1 / std::max(ohm, static_cast<Long>(section_floor_ohm));
+    g += siemens * at.nodes * at.nodes.transpose();
+    g_emf += at.nodes * (at.emf * siemens);
   };
-  add(top_section, top_siemens);
-  add(bottom_section, bottom_siemens);
+  for (std::size_t i = 0; i < sections.size(); ++i) {
+    const Long total = sections[i].total_ohm;
+    if (sections[i].top) add(*sections[i].top, (1 - static_cast<Long>(positions[i].fraction)) * total);
+    if (!positions[i].open) add(sections[i].bottom, positions[i].fraction * total);
+  }
 
   // Node voltages from states and input, the free ones by Kirchhoff's current law.
   const Eigen::Index states = charges + fluxes;
@@ -204,7 +213,7 @@ StateSpace StateSpaceFamily::State::solve(Long top_siemens, Long bottom_siemens)
     const Eigen::PartialPivLU<LongMatrix> kirchhoff(free_nodes.transpose() * g * free_nodes);
     const LongMatrix current = g * nodes_from_states + inductor_currents;
     const LongVector input_current = g * nodes_from_input + g_emf;
-    nodes_from_states -= free_nodes * kirchhoff.solve(free_nodes.transpose() * current);
+    if (states > 0) nodes_from_states -= free_nodes * kirchhoff.solve(free_nodes.transpose() * current);
     nodes_from_input -= free_nodes * kirchhoff.solve(free_nodes.transpose() * input_current);
   }
   StateSpace result;
@@ -214,38 +223,74 @@ StateSpace StateSpaceFamily::State::solve(Long top_siemens, Long bottom_siemens)
   result.b.head(charges) = -charge_to_nodes.transpose() * (g * nodes_from_input + g_emf);
   result.a.bottomRows(fluxes) = current_to_nodes.transpose() * nodes_from_states;
   result.b.tail(fluxes) = current_to_nodes.transpose() * nodes_from_input + input_to_flux;
-  if (observed >= 0) {
-    result.c = nodes_from_states.row(observed);
-    result.d = nodes_from_input(observed);
+  if (observed.index >= 0) {
+    result.c = nodes_from_states.row(observed.index);
+    result.d = nodes_from_input(observed.index) + observed.emf;
   } else {
     result.c = LongRow::Zero(states);
-    result.d = observed == MergedNodes::is_emf ? 1 : 0;
+    result.d = observed.emf;
   }
   if (!result.a.allFinite() || !result.b.allFinite() || !result.c.allFinite())
     throw InputError("the network has no solution: it is singular at this position of the knob");
   return result;
 }
 
-StateSpaceFamily::StateSpaceFamily(const Network& network, std::optional<std::size_t> moving)
-    : state_(std::make_unique<State>(network, moving)) {}
+StateSpaceFamily::StateSpaceFamily(const Circuit& circuit, std::vector<PotPlace> moving)
+    : gains_(circuit.gains), moving_(std::move(moving)) {
+  for (std::size_t stage = 0; stage < circuit.stages.size(); ++stage) {
+    std::vector<std::size_t> pots;
+    for (const PotPlace& place : moving_)
+      if (place.stage == stage) pots.push_back(place.pot);
+    stages_.emplace_back(circuit.stages[stage], pots);
+  }
+}
 StateSpaceFamily::~StateSpaceFamily() = default;
 StateSpaceFamily::StateSpaceFamily(StateSpaceFamily&&) noexcept = default;
 StateSpaceFamily& StateSpaceFamily::operator=(StateSpaceFamily&&) noexcept = default;
 
-int StateSpaceFamily::states() const noexcept { return static_cast<int>(state_->charges + state_->fluxes); }
-
-StateSpace StateSpaceFamily::at(double fraction) const {
-  const Long total = state_->total_ohm;
-  const Long floor = section_floor_ohm;
-  const Long bottom = std::max(fraction * total, floor);
-  const Long top = std::max((1 - static_cast<Long>(fraction)) * total, floor);
-  return state_->solve(1 / top, 1 / bottom);
+int StateSpaceFamily::states() const noexcept {
+  Eigen::Index states = 0;
+  for (const Stage& stage : stages_) states += stage.charges + stage.fluxes;
+  return static_cast<int>(states);
 }
 
-StateSpace StateSpaceFamily::disconnected() const { return state_->solve(0, 0); }
+namespace {
 
-std::vector<double> natural_frequencies_hz(const Network& network) {
-  const StateSpace space = StateSpaceFamily(network).at(0);
+/// `later` driven by the output of `earlier`, amplified.
+StateSpace chained(const StateSpace& earlier, const StateSpace& later, Long gain) {
+  const Eigen::Index n = earlier.a.rows();
+  const Eigen::Index m = later.a.rows();
+  StateSpace whole;
+  whole.a = LongMatrix::Zero(n + m, n + m);
+  whole.a.topLeftCorner(n, n) = earlier.a;
+  whole.a.bottomRightCorner(m, m) = later.a;
+  whole.a.bottomLeftCorner(m, n) = gain * later.b * earlier.c;
+  whole.b.resize(n + m);
+  whole.b << earlier.b, later.b * (gain * earlier.d);
+  whole.c.resize(n + m);
+  whole.c << (later.d * gain) * earlier.c, later.c;
+  whole.d = later.d * gain * earlier.d;
+  return whole;
+}
+
+}  // namespace
+
+StateSpace StateSpaceFamily::at(const std::vector<PotPosition>& positions) const {
+  StateSpace whole;
+  for (std::size_t stage = 0; stage < stages_.size(); ++stage) {
+    std::vector<PotPosition> own;
+    for (std::size_t i = 0; i < moving_.size(); ++i)
+      if (moving_[i].stage == stage) own.push_back(positions.at(i));
+    const StateSpace one = stages_[stage].solve(own);
+    whole = stage == 0 ? one : chained(whole, one, gains_[stage - 1]);
+  }
+  whole.c *= static_cast<Long>(gains_.back());
+  whole.d *= gains_.back();
+  return whole;
+}
+
+std::vector<double> natural_frequencies_hz(const Circuit& circuit) {
+  const StateSpace space = StateSpaceFamily(circuit).at();
   std::vector<double> result;
   if (space.a.rows() == 0) return result;
   const Eigen::EigenSolver<Eigen::MatrixXd> solver(space.a.cast<double>(), false);

@@ -1,4 +1,4 @@
-// A network as s' = A s + B u, y = c s + d u, with u the emf, y the voltage at the grid and s in energy variables.
+// A circuit as s' = A s + B u, y = c s + d u, with u the emf, y the voltage at the grid and s in energy variables.
 //
 // States are charges and fluxes scaled so that |s|^2 / 2 is the stored energy in joules. L and C do not depend on any
 // knob, so every knob position dissipates in the same norm: A + A^T <= 0. Reduced beforehand, from the shape of the
@@ -11,8 +11,6 @@
 #pragma once
 
 #include <Eigen/Core>
-#include <memory>
-#include <optional>
 #include <vector>
 
 #include "dsp/network.h"
@@ -31,14 +29,20 @@ struct StateSpace {
   Long d = 0;
 };
 
-/// All positions of one pot (or of none) of a network, in one set of states.
+/// Where a moving pot stands.
+struct PotPosition {
+  double fraction = 0;  // RB/RT, 0..1
+  bool open = false;    // the section below the wiper is disconnected (a no-load pot at 10)
+};
+
+/// All positions of some pots (or of none) of a circuit, in one set of states. The states of a chain are those of its
+/// networks one after the other; each network dissipates in its own norm, and none drives one before it, so that no motion
+/// of the pots can make the chain unstable.
 class StateSpaceFamily {
  public:
-  /// Everything at its dial. Throws InputError when the network has no solution.
-  explicit StateSpaceFamily(const Network& network) : StateSpaceFamily(network, std::nullopt) {}
-
-  /// The pot number `moving` of network.pots is left free, its sections floored so that the states stay the same.
-  StateSpaceFamily(const Network& network, std::optional<std::size_t> moving);
+  /// The pots in `moving` are left free, their sections floored so that the states stay the same; everything else is at its
+  /// dial. Throws InputError when a network has no solution.
+  explicit StateSpaceFamily(const Circuit& circuit, std::vector<PotPlace> moving = {});
 
   ~StateSpaceFamily();
   StateSpaceFamily(StateSpaceFamily&&) noexcept;
@@ -46,21 +50,20 @@ class StateSpaceFamily {
 
   int states() const noexcept;
 
-  /// At an element fraction RB/RT of the moving pot, 0..1; any number when none moves.
-  StateSpace at(double fraction) const;
-
-  /// With the moving rheostat's section disconnected (a no-load pot at 10).
-  StateSpace disconnected() const;
+  /// Of the moving pots in their order.
+  StateSpace at(const std::vector<PotPosition>& positions = {}) const;
 
  private:
-  struct State;
-  std::unique_ptr<State> state_;
+  struct Stage;
+  std::vector<Stage> stages_;
+  std::vector<double> gains_;
+  std::vector<PotPlace> moving_;
 };
 
 /// Smallest section of a moving pot in the time path, ohm: -140 dB of a 10k element, below any end resistance met.
 constexpr double section_floor_ohm = 1e-3;
 
 /// |eigenvalue| / 2 pi and |imaginary part| / 2 pi of every natural mode, Hz: where corners and resonances lie.
-std::vector<double> natural_frequencies_hz(const Network& network);
+std::vector<double> natural_frequencies_hz(const Circuit& circuit);
 
 }  // namespace unsoldered

@@ -6,13 +6,12 @@
 
 #include "dsp/error.h"
 #include "dsp/exact_step.h"
-#include "dsp/hookup_network.h"
 
 namespace unsoldered {
 namespace {
 
 constexpr int moments = Interpolator::moments;
-constexpr int row_count = 3072;
+constexpr int rows_a_part = 3072;
 constexpr int most_states = 64;  // of the kernel's work space
 
 // A moving knob is taken as standing for short spans of the sample, in each where it is in the middle of that span. The
@@ -22,34 +21,11 @@ constexpr int halvings = 6;  // the shortest span is 2^-halvings of a sample
 constexpr int spans_an_octave = 2;
 
 constexpr double full_turn_s = 0.05;
-constexpr double most_speed_per_s = 200;  // element fraction; a law with a jump in it has no steepest place
-
-/// Element fraction a second, of a full turn where the law is steepest.
-double full_speed_per_s(const Pot& pot) {
-  constexpr int places = 2000;
-  double steepest = 1;
-  for (int i = 0; i < places; ++i) {
-    const double rise = element_fraction(pot, 10.0 * (i + 1) / places) - element_fraction(pot, 10.0 * i / places);
-    steepest = std::max(steepest, rise * places);
-  }
-  return std::min(steepest / full_turn_s, most_speed_per_s);
-}
+constexpr double most_speed_per_s = 200;  // places; a law with a jump in it has no steepest place
 
 double fraction_of(double place) {
   const double up = std::pow(place, 4);
   return up / (up + std::pow(1 - place, 4));
-}
-
-double row_of(double fraction) {
-  double row = 0;
-  table_rows(&fraction, 1, row_count - 1, &row);
-  return row;
-}
-
-std::size_t moving_pot(const Network& network, Knob knob) {
-  for (std::size_t i = 0; i < network.pots.size(); ++i)
-    if (network.pots[i].knob == knob) return i;
-  throw InputError("this hookup has no tone knob to turn; add a [tone] block or turn the volume");
 }
 
 RowLayout row_layout(int states) {
@@ -102,19 +78,23 @@ class SpanSteps {
 
 }  // namespace
 
-StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) {
-  const Network network = hookup_network(hookup);
-  const std::size_t moving = moving_pot(network, knob);
-  const StateSpaceFamily family(network, moving);
+StepTable::StepTable(const Circuit& circuit, const Knob& knob, double rate_hz) {
+  const std::vector<PotPlace> moving = pots_of(circuit, knob);
+  if (moving.empty()) throw InputError("this hookup has no such knob to turn; add its block or turn the volume");
+  for (const PotPlace& place : moving) pots_.push_back(circuit.stages[place.stage].pots[place.pot]);
+  halves_ = static_cast<int>(moving.size());
+  pot_ = pots_.front().pot;
+  if (pots_.front().backwards) std::swap(pot_.dead_ccw_deg, pot_.dead_cw_deg);
+  open_at_ten_ = pots_.front().open_at_ten;
+  const StateSpaceFamily family(circuit, moving);
   if (family.states() > most_states)
     throw InputError("this hookup stores energy in " + std::to_string(family.states()) +
                      " independent ways; a turning knob is computed for up to " + std::to_string(most_states) +
                      ": leave out extra capacitors and inductors");
+  const int row_count = halves_ * (rows_a_part - 1) + 1;
   layout_ = row_layout(family.states());
-  pot_ = network.pots[moving].pot;
-  const double full_speed = full_speed_per_s(pot_) / rate_hz;  // fraction a sample
+  const double full_speed = full_speed_per_s() / rate_hz;  // places a sample
   samples_at_full_speed_ = 1 / full_speed;
-  open_at_ten_ = network.pots[moving].open_at_ten;
   const auto size = static_cast<std::size_t>(layout_.size);
   data_.assign(size * static_cast<std::size_t>(row_count + 2), 0);
   const auto row_data = [&](int row) { return data_.data() + size * static_cast<std::size_t>(row); };
@@ -127,7 +107,7 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) {
   std::vector<Step<double>> shortest;
   shortest.reserve(static_cast<std::size_t>(row_count));
   for (int i = 0; i < row_count; ++i) {
-    const StateSpace space = family.at(fraction_of(static_cast<double>(i) / (row_count - 1)));
+    const StateSpace space = family.at(positions(place_of(i)));
     write_output(space, row_data(i));
     shortest.push_back(exact_step_in_double(space, shortest_s));
   }
@@ -138,10 +118,10 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) {
   const auto put_before = [&](double start, double length) {
     const Polynomials<double> powers = chebyshev_powers(start, length);
     for (int i = 0; i < row_count; ++i) {
-      const double fraction = fraction_of(static_cast<double>(i) / (row_count - 1));
+      const double place = place_of(i);
       for (const int direction : {1, -1}) {
         const double passed = (1 - start - length / 2) * full_speed * direction;
-        spans.at(row_of(std::clamp(fraction - passed, 0.0, 1.0)), span);
+        spans.at(row_of(std::clamp(place - passed, 0.0, 1.0)), span);
         RowStep later(layout_, row_data(i) + (direction > 0 ? 1 : 2) * layout_.step);
         if (start + length == 1) {
           later.transition = span.transition;
@@ -171,7 +151,7 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) {
 
   double* last = row_data(row_count);
   if (open_at_ten_) {
-    const StateSpace space = family.disconnected();
+    const StateSpace space = family.at({PotPosition{1, true}});
     write_output(space, last);
     const Step<double> step = exact_step_in_double(space, Long(1) / rate_hz);
     for (int arrival = 0; arrival < 3; ++arrival) {
@@ -184,17 +164,60 @@ StepTable::StepTable(const Hookup& hookup, Knob knob, double rate_hz) {
   }
 }
 
-double StepTable::fraction(double dial) const noexcept { return std::clamp(element_fraction(pot_, dial), 0.0, 1.0); }
+double StepTable::place(double dial) const noexcept {
+  if (pots_.size() > 1) return 1 - electrical_travel(pot_, 10 - dial);  // the first of the two gangs runs backwards
+  return std::clamp(element_fraction(pot_, pots_.front().backwards ? 10 - dial : dial), 0.0, 1.0);
+}
 
-void StepTable::rows_at(const double* dials, const double* fractions, int frames, double* rows) const noexcept {
-  table_rows(fractions, frames, row_count - 1, rows);
+std::vector<PotPosition> StepTable::positions(double place) const {
+  if (pots_.size() == 1) return {{place, false}};
+  std::vector<PotPosition> result;
+  for (const PotInNetwork& gang : pots_) {
+    Pot whole = gang.pot;
+    whole.dead_ccw_deg = whole.dead_cw_deg = 0;
+    result.push_back({element_fraction(whole, 10 * (gang.backwards ? 1 - place : place)), false});
+  }
+  return result;
+}
+
+double StepTable::place_of(int row) const noexcept {
+  const int part = std::min(row / (rows_a_part - 1), halves_ - 1);
+  const double inside = fraction_of(static_cast<double>(row - part * (rows_a_part - 1)) / (rows_a_part - 1));
+  return (part + inside) / halves_;
+}
+
+double StepTable::row_of(double place) const noexcept {
+  double row = 0;
+  const double dial = 0;  // never at ten
+  rows_at(&dial, &place, 1, &row);
+  return row;
+}
+
+void StepTable::rows_at(const double* dials, const double* places, int frames, double* rows) const noexcept {
+  if (halves_ == 1) {
+    table_rows(places, frames, rows_a_part - 1, rows);
+  } else {
+    const auto part = [&](double place) { return std::min(static_cast<int>(place * halves_), halves_ - 1); };
+    for (int n = 0; n < frames; ++n) rows[n] = places[n] * halves_ - part(places[n]);
+    table_rows(rows, frames, rows_a_part - 1, rows);
+    for (int n = 0; n < frames; ++n) rows[n] += part(places[n]) * (rows_a_part - 1);
+  }
   if (!open_at_ten_) return;
   for (int n = 0; n < frames; ++n)
-    if (dials[n] >= 10) rows[n] = row_count;
+    if (dials[n] >= 10) rows[n] = halves_ * (rows_a_part - 1) + 1;
 }
 
 double StepTable::speed(double from, double to) const noexcept {
   return std::clamp((to - from) * samples_at_full_speed_, -1.0, 1.0);
+}
+
+/// Places a second, of a full turn where the law is steepest.
+double StepTable::full_speed_per_s() const noexcept {
+  constexpr int dials = 2000;
+  double steepest = 1;
+  for (int i = 0; i < dials; ++i)
+    steepest = std::max(steepest, std::abs(place(10.0 * (i + 1) / dials) - place(10.0 * i / dials)) * dials);
+  return std::min(steepest / full_turn_s, most_speed_per_s);
 }
 
 }  // namespace unsoldered

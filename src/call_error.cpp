@@ -80,6 +80,9 @@ std::string call_error_text(const CLI::App& app, const CLI::ParseError& error) {
     what = option->get_name() + ": its value is missing; wanted is " + option->get_type_name() + ": " +
            option->get_description();
   }
+  if (const auto end = what.find(" was given a disallowed flag override"); end != std::string::npos) {
+    what = "--" + what.substr(0, end) + " takes no value; leave away the equals sign and what follows";
+  }
   std::replace(what.begin(), what.end(), '\n', ' ');  // descriptions are broken into lines for the help
   return what + "; see unsoldered" + (&verb == &app ? "" : " " + verb.get_name()) + " --help";
 }

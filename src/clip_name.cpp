@@ -63,13 +63,14 @@ std::string hookup_stem(const std::filesystem::path& file) {
   return file.stem().string();
 }
 
-std::string clip_name(std::string_view take, std::string_view hookup, std::optional<double> dial) {
+std::string clip_name(std::string_view take, std::string_view hookup, std::optional<double> dial,
+                      std::string_view ending) {
   std::string name = safe_name(take) + '_' + safe_name(hookup);
-  if (!dial) return name + "_turn.wav";
+  if (!dial) return name.append("_turn").append(ending);
   std::array<char, 8> text{};
   const auto end = std::to_chars(text.data(), text.data() + text.size(), *dial, std::chars_format::fixed, 2).ptr;
   const std::string digits(text.data(), end);
-  return name + "_dial-" + (digits.size() < 5 ? "0" : "") + digits + ".wav";  // 00.00 to 10.00
+  return name.append("_dial-").append(digits.size() < 5 ? "0" : "").append(digits).append(ending);  // 00.00 to 10.00
 }
 
 }  // namespace unsoldered

@@ -16,6 +16,7 @@ std::string safe_name(std::string_view text);
 std::string hookup_stem(const std::filesystem::path& file);
 
 /// `dial` empty: the knob turns.
-std::string clip_name(std::string_view take, std::string_view hookup, std::optional<double> dial);
+std::string clip_name(std::string_view take, std::string_view hookup, std::optional<double> dial,
+                      std::string_view ending = ".wav");
 
 }  // namespace unsoldered

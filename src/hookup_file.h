@@ -6,6 +6,7 @@
 #include <vector>
 
 #include "dsp/hookup.h"
+#include "src/toml_document.h"
 
 namespace unsoldered {
 
@@ -16,6 +17,13 @@ Hookup read_hookup(const std::filesystem::path& file, const std::vector<std::str
 /// The same from text; `name` stands for the file in messages, `folder` is where a measured taper's CSV is looked for.
 Hookup parse_hookup(const std::string& toml, const std::string& name, const std::filesystem::path& folder,
                     const std::vector<std::string>& settings = {});
+
+/// The same from a document whose settings and catalogue names are already applied (catalogue.h), such as a hookup that
+/// stands in a job.
+Hookup hookup_from(const TomlDocument& document, const std::filesystem::path& folder);
+
+/// The CSV files of measured tapers that a hookup names.
+std::vector<std::filesystem::path> measured_files(const toml::table& hookup, const std::filesystem::path& folder);
 
 /// The files that are read for a hookup: the file itself and those of measured tapers. Throws as read_hookup does.
 std::vector<std::filesystem::path> files_of_hookup(const std::filesystem::path& file,

@@ -7,6 +7,7 @@
 
 #include "dsp/error.h"
 #include "dsp/quantity.h"
+#include "src/inside_folder.h"
 #include "src/number_text.h"
 #include "src/toml_document.h"
 
@@ -101,26 +102,13 @@ Taper parse_measured_taper(std::string_view csv, const std::string& name) {
 }
 
 Taper read_measured_taper(const std::filesystem::path& folder, const std::string& file) {
-  const std::filesystem::path relative(file);
-  const auto leaves = [&](const std::filesystem::path& path) {
-    return path.is_absolute() || std::find(path.begin(), path.end(), "..") != path.end();
-  };
-  const std::string why =
-      in_quotes(file) + " leads out of the folder of the hookup file; put the measurement beside it";
   if (file.empty()) {
     throw InputError("no file is named; give a CSV file in the folder of the hookup file");
   }
-  if (leaves(relative.lexically_normal())) {
-    throw InputError(why);
+  if (leads_out_of(folder, file)) {
+    throw InputError(in_quotes(file) + " leads out of the folder of the hookup file; put the measurement beside it");
   }
-  const std::filesystem::path home = folder.empty() ? std::filesystem::path(".") : folder;
-  std::error_code error;
-  const std::filesystem::path real_home = std::filesystem::weakly_canonical(home, error);
-  const std::filesystem::path real_file = std::filesystem::weakly_canonical(home / relative, error);
-  if (error || leaves(real_file.lexically_relative(real_home))) {
-    throw InputError(why);
-  }
-  return parse_measured_taper(read_small_file(home / relative), file);
+  return parse_measured_taper(read_small_file(folder / file), file);
 }
 
 }  // namespace unsoldered

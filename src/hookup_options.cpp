@@ -1,16 +1,23 @@
 #include "src/hookup_options.h"
 
+#include "dsp/error.h"
 #include "src/hookup_file.h"
 
 namespace unsoldered {
 
-Hookup HookupOptions::read() const { return read_hookup(file, settings); }
+Hookup HookupOptions::read() const {
+  const Hookup hookup = read_hookup(file, settings);
+  if (right && !has_right_gang(hookup))
+    throw InputError("--right: no pot of " + file + " has a second gang; give one a right = { resistance = \"…\" }");
+  return right ? right_half(hookup) : hookup;
+}
 
 void add_hookup_options(CLI::App& verb, HookupOptions& options) {
   verb.add_option("HOOKUP", options.file, "Hookup file (*.hookup.toml)")->required();
   verb.add_option("--set", options.settings, "Overrides a value of the hookup, such as tone.dial=4; may be repeated")
       ->allow_extra_args(false)
       ->type_name("KEY=VALUE");
+  verb.add_flag("--right", options.right, "The second gang of stereo pots (right = { ... }) instead of the first");
 }
 
 void add_json_option(CLI::App& verb, bool& json) {

@@ -1,4 +1,4 @@
-// What every verb that reads one hookup takes: HOOKUP, --set and --json.
+// What every verb that reads one hookup takes: HOOKUP, --set, --right and --json.
 #pragma once
 
 #include <CLI/CLI.hpp>
@@ -12,8 +12,10 @@ namespace unsoldered {
 struct HookupOptions {
   std::string file;
   std::vector<std::string> settings;
+  bool right = false;
   bool json = false;
 
+  /// The hookup, with --right as its stereo pots' second gangs have it.
   Hookup read() const;
 };
 

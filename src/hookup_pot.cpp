@@ -141,26 +141,29 @@ std::vector<std::string_view> pot_keys() {
   return {"taper", "travel", "dead_travel", "end_resistance", "measured_total", "measured_half", "tolerance"};
 }
 
-Pot read_pot(const TomlBlock& block, std::string_view total_key, const std::filesystem::path& folder) {
-  Pot pot;
+Pot read_pot(const TomlBlock& block, std::string_view total_key, const std::filesystem::path& folder, const Pot* like) {
+  Pot pot = like == nullptr ? Pot{} : *like;
   const std::optional<double> nominal_ohm = block.optional_quantity(total_key, Unit::ohm, kTotal);
   const std::optional<double> measured_ohm = block.optional_quantity("measured_total", Unit::ohm, kTotal);
-  if (!nominal_ohm && !measured_ohm) {
+  if (!nominal_ohm && !measured_ohm && like == nullptr) {
     block.refuse_missing(total_key,
                          "the total, from 10 ohm to 100M, as in \"500k\"; or measured_total, as read on a meter");
   }
-  pot.total_ohm = measured_ohm ? *measured_ohm : *nominal_ohm;
+  pot.total_ohm = measured_ohm.value_or(nominal_ohm.value_or(pot.total_ohm));
   pot.travel_deg = block.optional_number("travel", kTravel).value_or(pot.travel_deg);
   read_dead_travel(block, pot);
-  pot.end_ohm = block.optional_quantity("end_resistance", Unit::ohm, kEnd).value_or(0);
+  pot.end_ohm = block.optional_quantity("end_resistance", Unit::ohm, kEnd).value_or(pot.end_ohm);
   if (!(2 * pot.end_ohm < pot.total_ohm)) {
     block.refuse("end_resistance", format_quantity(pot.end_ohm, Unit::ohm) +
                                        " at each end leaves nothing of the total " +
                                        format_quantity(pot.total_ohm, Unit::ohm) + "; accepted is below half of it");
   }
-  pot.tolerance = block.tolerance();
-  const std::optional<double> half_ohm = block.optional_quantity("measured_half", Unit::ohm, kReading);
-  pot.taper = half_ohm ? read_law_through_half(block, pot, *half_ohm) : read_taper(block, folder);
+  if (block.has("tolerance")) pot.tolerance = block.tolerance();
+  if (const std::optional<double> half_ohm = block.optional_quantity("measured_half", Unit::ohm, kReading)) {
+    pot.taper = read_law_through_half(block, pot, *half_ohm);
+  } else if (like == nullptr || block.has("taper")) {
+    pot.taper = read_taper(block, folder);
+  }
   return pot;
 }
 

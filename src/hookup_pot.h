@@ -14,7 +14,9 @@ namespace unsoldered {
 std::vector<std::string_view> pot_keys();
 
 /// `total_key` is "resistance", or "value" in an extra part. `measured_total` stands in for the total; `measured_half`
-/// beats the name of the law. A measured taper's CSV is looked for in `folder`. Throws InputError.
-Pot read_pot(const TomlBlock& block, std::string_view total_key, const std::filesystem::path& folder);
+/// beats the name of the law. A measured taper's CSV is looked for in `folder`. `like` gives
+/// what the block leaves out, as for the second gang of a stereo pot. Throws InputError.
+Pot read_pot(const TomlBlock& block, std::string_view total_key, const std::filesystem::path& folder,
+             const Pot* like = nullptr);
 
 }  // namespace unsoldered

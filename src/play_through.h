@@ -3,6 +3,7 @@
 
 #include <functional>
 #include <variant>
+#include <vector>
 
 #include "dsp/hookup.h"
 #include "src/take.h"
@@ -10,19 +11,23 @@
 
 namespace unsoldered {
 
-/// A knob held at a dial position (the volume knob) or one that turns, the volume then at 10 unless it is the one.
+/// A knob that turns; the volume is at 10 unless it is the one.
 struct TurningKnob {
   Knob knob = Knob::volume;
   Turn turn;
 };
-using KnobMotion = std::variant<double, TurningKnob>;
+
+/// The volume knob held at a dial position, or one or several knobs that turn.
+using KnobMotion = std::variant<double, std::vector<TurningKnob>>;
 
 /// Called for every block, planar; returns false to stop early.
 using BlockSink = std::function<bool(const double* const* channels, int frames)>;
 
-/// Frames out line up with frames in: the filter's latency is cut off the front and made up with silence at the end.
-/// Memory does not depend on the length. One thread. Throws HookupError (network without
-/// a solution), InputError (damaged take), CannotError, and whatever `sink` throws. Returns the number of frames given to `sink`.
+/// Frames out line up with frames in: the filter's latency is cut off the front and made up with silence at the end. Odd
+/// channels go through the left gang of stereo pots, even ones through the right. Where the hookup names a channel as the
+/// second source's, that channel is its emf and adds to all others; its own place is filled with the first of them.
+/// Memory does not depend on the length. One thread. Throws HookupError (network without a solution), InputError (damaged
+/// take, a channel it does not have), CannotError, and whatever `sink` throws. Returns the number of frames given to `sink`.
 std::int64_t play_through(Take& take, const Hookup& hookup, const KnobMotion& motion, const BlockSink& sink);
 
 }  // namespace unsoldered

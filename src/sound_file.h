@@ -1,4 +1,4 @@
-// Reads a take from a WAV (plain, extensible, RF64) or FLAC file through libsndfile, streamed.
+// Reads a take from a WAV (plain, extensible, RF64), W64, AIFF or FLAC file through libsndfile, streamed.
 //
 // Nothing is sized by what the header claims. Other formats are refused right after opening, so that libsndfile's
 // less trodden decoders are never run on files from elsewhere.
@@ -11,12 +11,13 @@
 
 namespace unsoldered {
 
-/// 1 to 8 channels, 8 to 384 kHz. A FLAC file that ends early is an error; a WAV file that does is played as far as it
+/// 1 to 8 channels, 8 to 384 kHz. A FLAC file that ends early is an error; any other that does is played as far as it
 /// goes, with a warning.
 class SoundFileTake : public Take {
  public:
   /// Throws InputError (missing, a folder, not sound, empty, out of bounds) or CannotError (no permission, I/O error).
-  explicit SoundFileTake(const std::filesystem::path& path);
+  /// `kind` is what messages call it.
+  explicit SoundFileTake(const std::filesystem::path& path, const std::string& kind = "take");
 
   TakeFormat format() const noexcept override { return format_; }
   int read(double* interleaved, int frames) override;
@@ -26,6 +27,7 @@ class SoundFileTake : public Take {
   void check_samples(const double* interleaved, int frames) const;
 
   std::filesystem::path path_;
+  std::string kind_;
   FileHandle descriptor_;  // outlives sound_
   SoundHandle sound_;
   TakeFormat format_;

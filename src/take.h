@@ -27,6 +27,9 @@ class Take {
   /// Throws InputError where the take is damaged, CannotError where it cannot be read.
   virtual int read(double* interleaved, int frames) = 0;
 
+  /// Frames that read() gives before the take begins, beyond those of format(): a filter that looks ahead answers early.
+  virtual int lead_frames() const noexcept { return 0; }
+
   /// What the user should know though the take can be used; empty: nothing.
   virtual std::string warning() const { return {}; }
 };
@@ -34,7 +37,7 @@ class Take {
 /// The word that stands for the phrase the program computes itself; a file of that name is `./built-in`.
 inline constexpr const char* kBuiltInTake = "built-in";
 
-/// A WAV or FLAC file, or the built-in phrase. Throws InputError or CannotError.
+/// A WAV (also RF64 and W64), AIFF or FLAC file, or the built-in phrase. Throws InputError or CannotError.
 std::unique_ptr<Take> open_take(const std::string& name);
 
 /// The take's name without folder and ending, as used in the names of clips.

@@ -248,12 +248,6 @@ std::optional<TomlBlock> TomlBlock::optional_block(std::string_view key) const {
   if (table != nullptr) {
     return TomlBlock(*document_, *table, dotted(key));
   }
-  if (value->is_string()) {
-    refuse(key, shown(*value) +
-                    " stands for a catalogue entry, which this version does not look up; write the block "
-                    "itself, starting with [" +
-                    dotted(key) + "]");
-  }
   refuse_type(key, *value, "a block that starts with [" + dotted(key) + "]");
 }
 

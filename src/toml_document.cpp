@@ -280,8 +280,8 @@ void apply_setting(TomlDocument& document, const std::string& setting) {
 
 std::string place_of(const TomlDocument& document, const toml::node& node) {
   const toml::source_region& source = node.source();
-  if (source.path && source.path->rfind(kSettingPlace, 0) == 0) {
-    return *source.path;
+  if (source.path && *source.path != document.name) {
+    return *source.path;  // laid over the document: by --set, or from the catalogue
   }
   return source.begin.line == 0 ? document.name : document.name + ":" + std::to_string(source.begin.line);
 }

@@ -29,7 +29,8 @@ TomlDocument parse_toml(std::string_view text, const std::string& name);
 /// string (`22n`, `10 m`, `audio 15%`). Throws InputError.
 void apply_setting(TomlDocument& document, const std::string& setting);
 
-/// Where a value was written: "guitar.hookup.toml:12", or "--set tone.dial=44".
+/// Where a value was written: "guitar.hookup.toml:12", or "--set tone.dial=44". What was parsed under another name than
+/// the document's and laid over it has that name for its place.
 std::string place_of(const TomlDocument& document, const toml::node& node);
 
 /// Where the value at a dotted key was written, or the nearest table round it.

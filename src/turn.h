@@ -26,6 +26,9 @@ class Turn {
   /// As the constructor, from "seconds:dial,seconds:dial,…".
   static Turn parse(std::string_view text, std::string_view where);
 
+  /// Where straight lines meet, jumps already ramps: times strictly rising.
+  const std::vector<TurnPoint>& corners() const noexcept { return corners_; }
+
   /// Dial position at a time; any thread.
   double dial(double seconds) const noexcept;
 

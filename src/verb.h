@@ -19,5 +19,6 @@ void add_response_verb(CLI::App& app, VerbAction& action);
 void add_knob_verb(CLI::App& app, VerbAction& action);
 void add_netlist_verb(CLI::App& app, VerbAction& action);
 void add_render_verb(CLI::App& app, VerbAction& action);
+void add_catalogue_verb(CLI::App& app, VerbAction& action);
 
 }  // namespace unsoldered

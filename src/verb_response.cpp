@@ -6,8 +6,7 @@
 #include <vector>
 
 #include "dsp/error.h"
-#include "dsp/hookup_network.h"
-#include "dsp/nodal.h"
+#include "dsp/hookup_response.h"
 #include "dsp/quantity.h"
 #include "src/cancel.h"
 #include "src/count_option.h"
@@ -67,10 +66,10 @@ std::vector<double> spread_frequencies(const ResponseOptions& options) {
 Table response_table(const Hookup& hookup, const std::vector<double>& dials, const std::vector<double>& frequencies) {
   Table table{{"dial", "frequency_hz", "level_db", "phase_deg", "group_delay_us"}, {}};
   for (const double dial : dials) {
-    NodalAnalysis analysis(hookup_network(hookup, dial));
+    HookupResponse response(hookup, dial);
     for (const double frequency : frequencies) {
       stop_if_interrupted();
-      const Transfer transfer = analysis.transfer(frequency);
+      const Transfer transfer = response.transfer(frequency);
       if (std::norm(transfer.value) > 0)
         table.rows.push_back(
             {dial, frequency, transfer.level_db(), transfer.phase_deg(), 1e6 * transfer.group_delay_s()});

@@ -95,7 +95,7 @@ TEST_CASE("Johnson noise of 125k with 500 pF, 20 Hz to 20 kHz, is 2.75220 uV at 
   // Nyquist 1928; the value calculated from 4 k T R and the first-order band limits.
   Hookup hookup = line_hookup(0, 500e3, 1e12);
   hookup.cable = Cable{500e-12, {}};
-  NodalAnalysis analysis = at(hookup, 5);
+  CircuitAnalysis analysis(hookup_circuit(hookup, 5));
   CHECK_THAT(1e6 * johnson_noise_v(analysis, 20, 20000, 300), WithinRel(2.75220, 1e-5));
 }
 
@@ -103,7 +103,7 @@ TEST_CASE("Looking back into the output, a pot at half is a quarter of its total
   Hookup hookup = line_hookup(0, 500e3, 10e3);
   hookup.cable = Cable{1e-9, {}};
   hookup.load.coupling_f = 22e-9;
-  NodalAnalysis analysis(without_load(hookup_network(hookup, 5)));
+  NodalAnalysis analysis(without_load(hookup_circuit(hookup, 5)));
   CHECK_THAT(std::abs(analysis.impedance(1000)), WithinRel(125e3, 1e-12));
 }
 

@@ -30,17 +30,17 @@ Complex response(const StateSpace& space, double hz) {
 }
 
 void check_against_nodal(const Hookup& hookup, double dial) {
-  const Network network = hookup_network(hookup, dial);
-  NodalAnalysis analysis(network);
-  const StateSpaceFamily held(network);
-  const StateSpaceFamily moving(network, 0);
+  const Circuit circuit = hookup_circuit(hookup, dial);
+  CircuitAnalysis analysis(circuit);
+  const StateSpaceFamily held(circuit);
+  const StateSpaceFamily moving(circuit, pots_of(circuit, Knob::volume));
   const double fraction = element_fraction(hookup.volume.pot, dial);
   for (const double hz : {20.0, 300.0, 2000.0, 9000.0, 20000.0}) {
     const Complex wanted = analysis.value(hz);
-    CHECK_THAT(std::abs(response(held.at(0), hz) - wanted), WithinAbs(0, 1e-9 * (1 + std::abs(wanted))));
+    CHECK_THAT(std::abs(response(held.at(), hz) - wanted), WithinAbs(0, 1e-9 * (1 + std::abs(wanted))));
     // The floor of a moving section, a milliohm, is the only difference between the two.
     if (fraction > 0.001 && fraction < 0.999) {
-      CHECK_THAT(std::abs(response(moving.at(fraction), hz) - wanted), WithinAbs(0, 1e-9 * (1 + std::abs(wanted))));
+      CHECK_THAT(std::abs(response(moving.at({{fraction}}), hz) - wanted), WithinAbs(0, 1e-9 * (1 + std::abs(wanted))));
     }
   }
 }
@@ -67,10 +67,10 @@ TEST_CASE("The state space has the response of nodal analysis for random network
 TEST_CASE("Every position dissipates in one and the same norm, and each exact step contracts") {
   std::mt19937 random(11);
   for (int i = 0; i < 40; ++i) {
-    const StateSpaceFamily family(hookup_network(random_hookup(random)), 0);
+    const StateSpaceFamily family(hookup_circuit(random_hookup(random)), {{0, 0}});
     for (const double fraction : {0.0, 1e-6, 0.01, 0.3, 0.99, 1.0}) {
       INFO("network " << i << ", fraction " << fraction);
-      const StateSpace space = family.at(fraction);
+      const StateSpace space = family.at({{fraction}});
       if (space.a.rows() == 0) continue;
       const LongMatrix symmetric = space.a + space.a.transpose();
       const Eigen::SelfAdjointEigenSolver<LongMatrix> solver(symmetric, Eigen::EigenvaluesOnly);
@@ -84,14 +84,14 @@ TEST_CASE("Every position dissipates in one and the same norm, and each exact st
 }
 
 TEST_CASE("A network without capacitors or inductors has no state") {
-  CHECK(StateSpaceFamily(hookup_network(line_hookup(100, 10e3, 47e3)), 0).states() == 0);
+  CHECK(StateSpaceFamily(hookup_circuit(line_hookup(100, 10e3, 47e3)), {{0, 0}}).states() == 0);
 }
 
 TEST_CASE("A capacitor loop, a sealed charge and a cutset of inductors take no states of their own") {
   // In the drawing: source and output capacitors, coil: 3. The lattice adds two inductors in series with a resistor (one
   // current), two capacitors in series (their middle charge is sealed) and a capacitor that closes a loop.
-  CHECK(StateSpaceFamily(hookup_network(pickup_hookup()), 0).states() == 3);
-  CHECK(StateSpaceFamily(hookup_network(example_hookups().back().hookup), 0).states() == 4);
+  CHECK(StateSpaceFamily(hookup_circuit(pickup_hookup()), {{0, 0}}).states() == 3);
+  CHECK(StateSpaceFamily(hookup_circuit(example_hookups().back().hookup), {{0, 0}}).states() == 4);
 }
 
 TEST_CASE("Natural frequencies of a bare pickup are its resonance 1/(2 pi sqrt(LC)), damped") {
@@ -100,7 +100,7 @@ TEST_CASE("Natural frequencies of a bare pickup are its resonance 1/(2 pi sqrt(L
   hookup.load = {1e9, 0, {}, {}};
   hookup.source.loss_ohm.reset();
   hookup.volume.pot.total_ohm = 100e6;
-  const std::vector<double> natural = natural_frequencies_hz(hookup_network(hookup, 10));
+  const std::vector<double> natural = natural_frequencies_hz(hookup_circuit(hookup, 10));
   const double undamped = 1 / (2 * std::numbers::pi * std::sqrt(2.4 * 110e-12));
   CHECK_THAT(*std::max_element(natural.begin(), natural.end()), WithinAbs(undamped, undamped * 1e-3));
 }

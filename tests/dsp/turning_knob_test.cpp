@@ -8,6 +8,7 @@
 #include "dsp/hookup_network.h"
 #include "dsp/interpolator.h"
 #include "dsp/moving_pot_filter.h"
+#include "dsp/several_knobs_filter.h"
 #include "tests/catch.h"
 #include "tests/dsp/example_hookups.h"
 
@@ -36,7 +37,7 @@ Samples sines_to_18k(int frames, double rate_hz) {
 
 /// dial(t) in samples of the output; compared from `first` to `last`.
 template <typename Dial>
-Comparison compare(const Hookup& hookup, double rate_hz, int first, int last, const Dial& dial) {
+Comparison compare(const Hookup& hookup, const Knob& knob, double rate_hz, int first, int last, const Dial& dial) {
   constexpr int parts = 64;
   const int frames = last + 1;
   const Samples take = sines_to_18k(frames, rate_hz);
@@ -44,7 +45,7 @@ Comparison compare(const Hookup& hookup, double rate_hz, int first, int last, co
   const int latency = interpolator.latency();
   const int taps = interpolator.taps();
 
-  MovingPotFilter filter(hookup, Knob::volume, rate_hz, 1);
+  MovingPotFilter filter(hookup, knob, rate_hz, 1);
   Samples dials(take.size());
   for (std::size_t n = 0; n < dials.size(); ++n) dials[n] = dial(static_cast<double>(n));
   Samples got(take.size());
@@ -52,14 +53,20 @@ Comparison compare(const Hookup& hookup, double rate_hz, int first, int last, co
   double* out = got.data();
   filter.process(&in, &out, frames, dials.data());
 
-  const Network network = hookup_network(hookup);
-  const StateSpaceFamily family(network, 0);
-  const Pot& pot = network.pots[0].pot;
+  const Circuit circuit = hookup_circuit(hookup);
+  const std::vector<PotPlace> moving = pots_of(circuit, knob);
+  const StateSpaceFamily family(circuit, moving);
+  const auto space_at = [&](double position) {
+    std::vector<PotPosition> positions;
+    for (const PotPlace& place : moving)
+      positions.push_back({fraction_below(circuit.stages[place.stage].pots[place.pot], position)});
+    return family.at(positions);
+  };
   std::vector<Polynomials<double>> powers;
   for (int k = 0; k < parts; ++k) powers.push_back(chebyshev_powers(static_cast<double>(k) / parts, 1.0 / parts));
   Eigen::VectorXd state = Eigen::VectorXd::Zero(family.states());
   const auto step_at = [&](double position) {
-    return exact_step_in_double(family.at(element_fraction(pot, position)), 1 / static_cast<Long>(rate_hz * parts));
+    return exact_step_in_double(space_at(position), 1 / static_cast<Long>(rate_hz * parts));
   };
   double error = 0;
   double power = 0;
@@ -80,7 +87,7 @@ Comparison compare(const Hookup& hookup, double rate_hz, int first, int last, co
       stepped_at = position;
       state = step.transition * state + step.drive * (powers[static_cast<std::size_t>(k)] * moment);
     }
-    const StateSpace end = family.at(element_fraction(pot, dial(n)));
+    const StateSpace end = space_at(dial(n));
     const double direct = n >= latency ? take[static_cast<std::size_t>(n - latency)] : 0;
     const double due = (end.c.cast<double>() * state).value() + static_cast<double>(end.d) * direct;
     const auto i = static_cast<std::size_t>(n);
@@ -138,10 +145,11 @@ TEST_CASE("Full turns up and down, in 50 and in 130 ms, are within -80 dB of fin
       for (const double seconds : {0.05, 0.13}) {
         const double rate = up ? 44100 : 48000;
         const double turn = seconds * rate;
-        const Comparison found = compare(example.hookup, rate, 100, 100 + static_cast<int>(turn), [&](double n) {
-          const double share = std::clamp((n - 100) / turn, 0.0, 1.0);
-          return 10 * (up ? share : 1 - share);
-        });
+        const Comparison found =
+            compare(example.hookup, Knob::volume, rate, 100, 100 + static_cast<int>(turn), [&](double n) {
+              const double share = std::clamp((n - 100) / turn, 0.0, 1.0);
+              return 10 * (up ? share : 1 - share);
+            });
         INFO(example.name << (up ? ", up" : ", down") << " in " << seconds << " s");
         CHECK(found.error_db < -80);
         CHECK(found.step_ratio < 1.001);
@@ -156,7 +164,7 @@ TEST_CASE(
     "A jump, played as 5 ms, is near: within -40 dB of fine exact steps, without a larger step than theirs by 1 %") {
   double worst_db = -300;
   for (const NamedHookup& example : hard_hookups()) {
-    const Comparison found = compare(example.hookup, 48000, 100, 600,
+    const Comparison found = compare(example.hookup, Knob::volume, 48000, 100, 600,
                                      [&](double n) { return 2 + 8 * std::clamp((n - 200) / 240, 0.0, 1.0); });
     INFO(example.name << ": " << found.error_db << " dB");
     CHECK(found.error_db < -40);
@@ -164,4 +172,75 @@ TEST_CASE(
     worst_db = std::max(worst_db, found.error_db);
   }
   WARN("worst error of a jump: " << worst_db << " dB");
+}
+
+TEST_CASE("Other knobs turn as well as the volume: blends of both laws, a second volume, a pedal past a buffer",
+          "[slow]") {
+  Hookup two = pickup_hookup();
+  SecondSource second;
+  second.source = two.source;
+  second.source.inductance_h = 4.5;
+  second.volume = two.volume;
+  second.volume->dial = 8;
+  two.second = second;
+  Hookup mn = two;
+  mn.blend = Blend{BlendLaw::mn, two.volume.pot, 5};
+  Hookup linear = mn;
+  linear.blend->law = BlendLaw::linear;
+  Hookup pedal = two;
+  Stage buffer;
+  buffer.buffer = Buffer{1e6, 20e-12, 1000, 6};
+  Stage volume;
+  volume.volume = Volume{};
+  volume.volume->pot.total_ohm = 25e3;
+  volume.cable = Cable{500e-12, {}};
+  pedal.then = {buffer, volume};
+  struct Case {
+    const char* name;
+    const Hookup* hookup;
+    const char* knob;
+  };
+  for (const Case& one : {Case{"MN blend", &mn, "blend"}, Case{"linear blend", &linear, "blend"},
+                          Case{"second volume", &two, "second.volume"}, Case{"pedal", &pedal, "pedal"}}) {
+    for (const bool up : {true, false}) {
+      const double turn = 0.05 * 48000;
+      const Comparison found = compare(*one.hookup, parse_knob(*one.hookup, one.knob), 48000, 100,
+                                       100 + static_cast<int>(turn), [&](double n) {
+                                         const double share = std::clamp((n - 100) / turn, 0.0, 1.0);
+                                         return 10 * (up ? share : 1 - share);
+                                       });
+      INFO(one.name << (up ? ", up: " : ", down: ") << found.error_db << " dB");
+      CHECK(found.error_db < -80);
+      CHECK(found.step_ratio < 1.001);
+    }
+  }
+}
+
+TEST_CASE("Several knobs at once: with one moving it is the same as that one alone") {
+  Hookup hookup = example_hookups()[1].hookup;  // with a tone
+  const double rate = 48000;
+  const int frames = 6000;
+  const Samples take = sines_to_18k(frames, rate);
+  Samples volume(take.size());
+  for (std::size_t n = 0; n < volume.size(); ++n)
+    volume[n] = 10 * std::clamp((static_cast<double>(n) - 1000) / 4800, 0.0, 1.0);
+  const Samples tone(take.size(), hookup.tone->dial);
+  Samples alone(take.size());
+  Samples together(take.size());
+  const double* in = take.data();
+  double* out = alone.data();
+  MovingPotFilter one(hookup, Knob::volume, rate, 1);
+  one.process(&in, &out, frames, volume.data());
+  out = together.data();
+  SeveralKnobsFilter both(hookup_circuit(hookup), {Knob::tone, Knob::volume}, rate, 1);
+  const double* dials[] = {tone.data(), volume.data()};
+  both.process(&in, &out, frames, dials);
+  CHECK(both.latency_frames() == one.latency_frames());
+  double error = 0;
+  double power = 0;
+  for (std::size_t n = 0; n < take.size(); ++n) {
+    error += (together[n] - alone[n]) * (together[n] - alone[n]);
+    power += alone[n] * alone[n];
+  }
+  CHECK(10 * std::log10(error / power) < -85);
 }

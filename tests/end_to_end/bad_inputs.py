@@ -256,7 +256,7 @@ def taper_cases():
 def network_cases():
     for name, extra, words in [
         ("ideal source shorted", 'part = "resistor"\nvalue = "0"\nbetween = ["top", "ground"]',
-         ("bad.hookup.toml", "short-circuited", "no solution", "give the source a resistance")),
+         ("bad.hookup.toml", "short-circuited", "no solution", "give the source (or the buffer")),
         ("a part on an island", 'part = "resistor"\nvalue = "1k"\nbetween = ["x", "y"]',
          ("bad.hookup.toml", '"x"', "extra resistor 1", "no path to ground", "connect it")),
         ("a part on one node", 'part = "capacitor"\nvalue = "1n"\nbetween = ["top"]', ("extra.0.between", "two")),
@@ -280,8 +280,18 @@ def network_cases():
                render("--turn", "0:0,1:10", hookup="bad.hookup.toml"), island)
     yield of_hookup("network: extra as one block", ('"extra"', "[[extra]]"),
                     ("[load]", '[extra]\npart = "resistor"\n[load]'), base=LINE)
-    yield of_hookup("network: a block of a later version", ('"blend"', "this version", "take it out"),
-                    ("[load]", '[blend]\nlaw = "MN"\n[load]'), base=LINE)
+    yield of_hookup("network: a blend with nothing to blend", ('"blend"', "nothing to blend with", "[second.source]"),
+                    ("[load]", '[blend]\nlaw = "MN"\nresistance = "250k"\n[load]'), base=LINE)
+    yield of_hookup("network: a buffer and a volume in one stage", ('"then.0.buffer"', "two [[then]]"),
+                    ("[load]", '[[then]]\nbuffer = { input = "1M", output = "1k" }\n'
+                     'volume = { resistance = "10k", taper = "linear" }\n[load]'), base=LINE)
+    yield of_hookup("network: a stage that holds nothing", ('"then.0"', "a volume, a tone, a cable or a buffer"),
+                    ("[load]", '[[then]]\n[load]'), base=LINE)
+    yield of_hookup("network: a channel for a source that is not there", ('"second_channel"', "[second.source]"),
+                    ("[source]", 'second_channel = 2\n[source]'), base=LINE)
+    yield of_hookup("network: a part across a buffer", ('"output" to "then1_output"', "one side"),
+                    ("[load]", '[[then]]\nbuffer = { input = "1M", output = "1k" }\n[[extra]]\npart = "resistor"\n'
+                     'value = "1k"\nbetween = ["output", "then1_output"]\n[load]'), base=LINE)
 
 
 def call_cases():
@@ -312,7 +322,7 @@ def call_cases():
         ("turn with decimal comma", render("--turn", "0:0,4:5,5"), ("--turn", '"5"', "0:0,8:10")),
         ("turn with three points at one time", render("--turn", "1:0,1:5,1:9"), ("--turn", "1 s", "third", "at most two")),
         ("turn with a comma at its end", render("--turn", "0:0,8:10,"), ("--turn", '""', "0:0,8:10")),
-        ("turn of a knob that is not there", render("--turn", "middle=0:1,1:2"), ("middle", good, "volume and tone")),
+        ("turn of a knob that is not there", render("--turn", "middle=0:1,1:2"), ("middle", good, "volume, tone")),
         ("turn without the knob's name", render("--turn", "=0:1"), ("--turn", '"=0:1"', "tone=0:10,4:0")),
         ("turn and dial", render("--turn", "0:1", "--dial", "5"), ("--dial and --turn", "one of the two")),
         ("two turns of one knob", render("--turn", "0:1", "--turn", "0:2"), ("--turn", "volume", "in one")),
@@ -321,7 +331,16 @@ def call_cases():
         ("jobs 0", render("--jobs", "0"), ("--jobs", "0", "1 to 256")),
         ("jobs -2", render("--jobs", "-2"), ("--jobs", "-2", "1 to 256")),
         ("jobs in words", render("--jobs", "many"), ("--jobs", '"many"', "1 to 256")),
-        ("an unknown format", render("--format", "wma"), ("--format", '"wma"', "wav")),
+        ("an unknown format", render("--format", "wma"), ("--format", '"wma"', "wav, flac, mp3 or ogg")),
+        ("a format in capitals", render("--format", "WAV"), ("--format", '"WAV"', "wav, flac, mp3 or ogg")),
+        ("a format with a dot", render("--format", ".flac"), ("--format", '".flac"', "wav, flac, mp3 or ogg")),
+        ("no format", render("--format", ""), ("--format", '""', "wav, flac, mp3 or ogg")),
+        ("FLAC with float", render("--format", "flac", "--depth", "float"), ("flac", "float", "16 or 24", "--format wav")),
+        ("FLAC of 32 bits", render("--format", "flac", "--depth", "32"), ("--depth", '"32"', "16, 24 or float")),
+        ("MP3 with a depth", render("--format", "mp3", "--depth", "24"), ("mp3", "--depth 24", "leave --depth", "wav or flac")),
+        ("Ogg with a depth", render("--format", "ogg", "--depth", "float"), ("ogg", "float", "leave --depth", "wav or flac")),
+        ("an unknown format with a depth", render("--format", "aiff", "--depth", "16"), ('"aiff"', "wav, flac, mp3 or ogg")),
+        ("match with a value", render("--match-loudness=-23"), ("--match-loudness", "no value", "leave away", "--help")),
         ("steps 1", ["knob", good, "--steps", "1"], ("--steps", "1", "2 to 10001")),
         ("steps 2.5", ["knob", good, "--steps", "2.5"], ("--steps", '"2.5"', "whole number", "2 to 10001")),
         ("steps beyond counting", ["knob", good, "--steps", "9" * 30], ("--steps", "2 to 10001")),
@@ -354,12 +373,12 @@ def call_cases():
 
 def sound_cases():
     for name, take, words in [
-        ("missing", "no.wav", ("no.wav", "No such file", "WAV or FLAC", "built-in")),
-        ("without a name", "", ("take ''", "WAV or FLAC", "built-in")),
-        ("a folder", ".", ("'.'", "folder", "WAV or FLAC")),
-        ("a hookup", "good.hookup.toml", ("good.hookup.toml", "not a sound file", "WAV or FLAC")),
+        ("missing", "no.wav", ("no.wav", "No such file", "WAV, FLAC", "built-in")),
+        ("without a name", "", ("take ''", "WAV, FLAC", "built-in")),
+        ("a folder", ".", ("'.'", "folder", "WAV, FLAC")),
+        ("a hookup", "good.hookup.toml", ("good.hookup.toml", "not a sound file", "WAV, FLAC")),
         ("an endless device", "/dev/zero", ("/dev/zero", "regular file", "save it")),
-        ("with a name of 5000 letters", "x" * 5000, ("name too long", "WAV or FLAC")),
+        ("with a name of 5000 letters", "x" * 5000, ("name too long", "WAV, FLAC")),
     ]:
         yield Case(f"take: {name}", words, render(take=take))
     frames = tone()
@@ -387,35 +406,107 @@ def sound_cases():
 
     for name, make in [("cut in half", cut), ("of 5 s cut at three quarters", cut_later), ("with a hole", flipped)]:
         yield Case(f"take: FLAC {name}", ("bad.flac", "up to sample", "whole copy"), render(take="bad.flac"), make)
-    yield Case("take: FLAC header and then noise", ("bad.flac", "WAV or FLAC"), render(take="bad.flac"),
+    yield Case("take: FLAC header and then noise", ("bad.flac", "WAV, FLAC"), render(take="bad.flac"),
                file("bad.flac", b"fLaC" + bytes(range(256)) * 8))
     for name, content, words in [
-        ("text named .wav", "This is a letter, not a sound.\n" * 20, ("not a sound file", "WAV or FLAC")),
-        ("0 bytes", b"", ("not a sound file", "WAV or FLAC")),
-        ("half a header", wav(frames)[:20], ("not a sound file", "WAV or FLAC")),
+        ("text named .wav", "This is a letter, not a sound.\n" * 20, ("not a sound file", "WAV, FLAC")),
+        ("0 bytes", b"", ("not a sound file", "WAV, FLAC")),
+        ("half a header", wav(frames)[:20], ("not a sound file", "WAV, FLAC")),
         ("a header and no samples", wav(frames[:0]), ("0 samples", "give a take")),
-        ("no channels", wav(frames, channels=0), ("not a sound file", "WAV or FLAC")),
+        ("no channels", wav(frames, channels=0), ("not a sound file", "WAV, FLAC")),
         ("9 channels", wav(tone(channels=9)), ("9 channels", "1 to 8", "split")),
-        ("65535 channels", wav(frames, channels=65535), ("WAV or FLAC",)),
+        ("65535 channels", wav(frames, channels=65535), ("WAV, FLAC",)),
         ("4 kHz", wav(frames, rate=4000), ("4000 Hz", "8000 to 384000", "resample")),
         ("768 kHz", wav(frames, rate=768000), ("768000 Hz", "8000 to 384000", "resample")),
-        ("0 Hz", wav(frames, rate=0), ("WAV or FLAC",)),
+        ("0 Hz", wav(frames, rate=0), ("WAV, FLAC",)),
     ]:
         yield Case(f"take: WAV, {name}", ("bad.wav", *words), render(take="bad.wav"), file("bad.wav", content))
     yield Case("take: ADPCM in a WAV", ("bad.wav", "ADPCM", "8 to 32 bits", "convert"), render(take="bad.wav"),
                lambda folder: sox(folder, "take.wav", "-e", "ms-adpcm", "bad.wav"))
-    yield Case("take: AIFF", ("bad.aiff", "AIFF", "WAV", "convert"), render(take="bad.aiff"),
-               lambda folder: sox(folder, "take.wav", "bad.aiff"))
+    yield Case("take: AU", ("bad.au", "AU", "WAV", "convert"), render(take="bad.au"),
+               lambda folder: sox(folder, "take.wav", "bad.au"))
     yield Case("take: Ogg Vorbis named .wav", ("bad.wav", "OGG", "WAV", "convert"), render(take="bad.wav"),
                lambda folder: sox(folder, "take.wav", "-t", "ogg", "bad.wav"))
     yield Case("take: a pipe nobody writes to", ("bad.wav", "regular file", "save it"), render(take="bad.wav"),
                lambda folder: os.mkfifo(folder / "bad.wav"))
-    yield Case("take: links in a circle", ("bad.wav", "symbolic links", "WAV or FLAC"), render(take="bad.wav"),
+    yield Case("take: links in a circle", ("bad.wav", "symbolic links", "WAV, FLAC"), render(take="bad.wav"),
                lambda folder: os.symlink("bad.wav", folder / "bad.wav"))
     yield Case("take: not readable by this user", ("take.wav", "Permission denied", "permissions"), render(),
                lambda folder: (folder / "take.wav").chmod(0), status=3, how="nobody")
     yield Case("hookup: not readable by this user", ("good.hookup.toml", "Permission denied", "permissions"),
                ["knob", "good.hookup.toml"], lambda folder: (folder / "good.hookup.toml").chmod(0), status=3, how="nobody")
+
+
+def aiff(samples, channels=None, promised=None, rate=48000):
+    """A 16-bit AIFF file as bytes; the rate is an 80-bit float (IEEE 754 extended)."""
+    body = np.round(np.asarray(samples) * 32767).astype(">i2").tobytes()
+    count = samples.shape[1] if channels is None else channels
+    size = len(body) if promised is None else promised
+    exponent = max(rate, 1).bit_length() - 1
+    extended = struct.pack(">HQ", 16383 + exponent, rate << (63 - exponent)) if rate else bytes(10)
+    common = struct.pack(">hIh", count, size // (2 * max(1, count)), 16) + extended
+    head = b"COMM" + struct.pack(">I", len(common)) + common + b"SSND" + struct.pack(">III", size + 8, 0, 0)
+    return b"FORM" + struct.pack(">I", (4 + len(head) + size) & 0xFFFFFFFF) + b"AIFF" + head + body
+
+
+def rf64(samples, long_size=None):
+    """A WAV file with its sizes in a ds64 chunk (EBU Tech 3306)."""
+    plain = wav(samples)
+    body = plain[44:]
+    size = len(body) if long_size is None else long_size
+    ds64 = b"ds64" + struct.pack("<IQQQI", 28, size + 72, size, size // 2, 0)
+    return b"RF64\xff\xff\xff\xffWAVE" + ds64 + plain[12:36] + b"data\xff\xff\xff\xff" + body
+
+
+def format_cases():
+    """Takes that a file format cannot hold, and takes in the rarer containers that are no good."""
+    def take(**more):
+        return file("bad.wav", wav(tone(**{key: more.pop(key) for key in ("channels",) if key in more}), **more))
+
+    def call(*words):
+        return render(*words, take="bad.wav")
+
+    yield Case("format: MP3 at 96 kHz", ("mp3", "96000 Hz", "44100 or 48000 Hz", "wav, flac or ogg", "resample"),
+               call("--format", "mp3"), take(rate=96000))
+    yield Case("format: MP3 at 37.8 kHz", ("mp3", "37800 Hz", "44100 or 48000 Hz", "wav, flac or ogg", "resample"),
+               call("--format", "mp3"), take(rate=37800))
+    yield Case("format: MP3 of 3 channels", ("mp3", "3 channels", "1 or 2", "wav or flac", "mix"),
+               call("--format", "mp3"), take(channels=3))
+    yield Case("format: MP3 at 96 kHz of 8 channels", ("mp3", "8 channels", "1 or 2", "wav or flac", "mix"),
+               call("--format", "mp3"), take(channels=8, rate=96000))
+    yield Case("format: Ogg at 384 kHz", ("ogg", "384000 Hz", "200000 Hz", "wav or flac", "resample"),
+               call("--format", "ogg"), take(rate=384000))
+    yield Case("format: Ogg of 6 channels", ("ogg", "6 channels", "1 or 2", "wav or flac", "mix"),
+               call("--format", "ogg"), take(channels=6))
+    yield Case("format: FLAC of 9 channels", ("9 channels", "1 to 8", "split"), call("--format", "flac"), take(channels=9))
+    yield Case("format: FLAC clip already there", ("take_good_dial-10.00.flac", "already there", "--force"),
+               render("--format", "flac"), file("clips/take_good_dial-10.00.flac", "keep me"))
+    for name, content, words in [
+        ("RF64 cut in its header", rf64(tone())[:60], ("not a sound file", "WAV, FLAC")),
+        ("RF64 cut before its samples", rf64(tone())[:80], ("0 samples", "give a take")),
+        ("RF64 and nothing else", b"RF64\xff\xff\xff\xffWAVE", ("not a sound file", "WAV, FLAC")),
+        ("AIFF cut in its header", aiff(tone())[:30], ("not a sound file", "WAV, FLAC")),
+        ("AIFF cut before its samples", aiff(tone())[:54], ("0 samples", "give a take")),
+        ("AIFF of 9 channels", aiff(tone(channels=9)), ("9 channels", "1 to 8", "split")),
+        ("AIFF at 0 Hz", aiff(tone(), rate=0), ("0 Hz", "8000 to 384000")),
+        ("AIFF at 4 kHz", aiff(tone(), rate=4000), ("4000 Hz", "8000 to 384000", "resample")),
+        ("AIFF that claims 1 GB and holds nothing", aiff(tone(frames=0), promised=1 << 30), ("0 samples", "give a take")),
+        ("WAV that claims 1 GB and holds nothing", wav(tone(frames=0), promised=1 << 30), ("0 samples", "give a take")),
+        ("RF64 that claims an exabyte and holds nothing", rf64(tone(frames=0), 1 << 60), ("0 samples", "give a take")),
+    ]:
+        yield Case(f"take: {name}", ("bad.wav", *words), render(take="bad.wav"), file("bad.wav", content))
+
+    def w64(keep):
+        def make(folder):
+            sox(folder, "take.wav", "whole.w64")
+            (folder / "bad.w64").write_bytes((folder / "whole.w64").read_bytes()[:keep])
+        return make
+
+    yield Case("take: W64 cut in its header", ("bad.w64", "not a sound file", "WAV, FLAC"), render(take="bad.w64"), w64(60))
+    yield Case("take: ADPCM in a WAV named .aifc", ("bad.aifc", "IMA ADPCM", "unusual", "convert"), render(take="bad.aifc"),
+               lambda folder: sox(folder, "take.wav", "-e", "ima-adpcm", "-t", "wav", "bad.aifc"))
+    yield Case("take: MP3", ("bad.mp3", "WAV", "convert"), render(take="bad.mp3"), lambda folder: (folder / "bad.mp3").write_bytes(
+        (b"\xff\xfb\x94\xc4" + bytes(380)) * 20))
 
 
 def output_cases():
@@ -432,6 +523,10 @@ def output_cases():
     yield Case("output: disk full, four at a time", ("No space left", "free", "another"),
                render("--dial", "10,8,6,4", "--jobs", "4", "--depth", "float", out="disk/clips", take="long.wav"),
                file("long.wav", wav(tone(200000))), status=3, how="small disk")
+    for kind in ("flac", "mp3", "ogg"):
+        yield Case(f"output: disk full, {kind}", ("No space left", "free", "another"),
+                   render("--dial", "10,5", "--format", kind, out="disk/clips", take="long.wav"),
+                   file("long.wav", wav(np.random.default_rng(1).uniform(-0.3, 0.3, (400000, 1)))), status=3, how="small disk")
     yield Case("output: larger than a file may be", ("File too large", "another"), render(take="long.wav"),
                file("long.wav", wav(tone(200000))), status=3, how="small files")
     yield Case("output: table into a full device", ("standard output", "cannot be written", "disk full"),
@@ -479,6 +574,149 @@ def output_cases():
                file("n" * 240 + ".toml", HOOKUP))
 
 
+JOB = """unsoldered_job = 1
+title = "Dull at 7"
+[take]
+file = "take.wav"
+[settings]
+selected = "A"
+[[candidate]]
+hookup_file = "good.hookup.toml"
+dial = 7
+"""
+
+
+def job_cases():
+    call = ["render", "--job", "bad.job.toml", "--out", "clips"]
+
+    def of_job(name, words, *changes, arguments=None, base=JOB, more=None):
+        text = base
+        for old, new in changes:
+            assert text.count(old) >= 1, old
+            text = text.replace(old, new, 1)
+        make = file("bad.job.toml", text)
+        return Case(f"job: {name}", words, arguments or call, both(make, more) if more else make)
+
+    leads_out = "leads out of the folder"
+    yield of_job("hookup above its folder", ("bad.job.toml:8", "candidate.0.hookup_file", leads_out, "copy the hookup"),
+                 ("good.hookup.toml", "../good.hookup.toml"))
+    yield of_job("hookup by an absolute path", ("bad.job.toml:8", '"/etc/passwd"', leads_out), ("good.hookup.toml", "/etc/passwd"))
+    yield of_job("hookup by a link out of the folder", ("bad.job.toml:8", "link.hookup.toml", leads_out),
+                 ("good.hookup.toml", "link.hookup.toml"),
+                 more=lambda folder: os.symlink("/etc/passwd", folder / "link.hookup.toml"))
+    yield of_job("take above its folder", ("bad.job.toml:4", "take.file", leads_out, "on the command line"),
+                 ("take.wav", "x/../../take.wav"))
+    yield of_job("impulse response above its folder", ("bad.job.toml:5", "heard_through.impulse_response", leads_out),
+                 ("[settings]", 'heard_through = { impulse_response = "../cab.wav" }\n[settings]'))
+    yield of_job("recorded through a hookup above its folder", ("bad.job.toml:5", "recorded_through.hookup", leads_out),
+                 ("[settings]", 'recorded_through = { hookup = "../x.hookup.toml" }\n[settings]'))
+    yield of_job("measured taper out of its folder", ("bad.job.toml:8", "measured", "leads out", "beside it"),
+                 ('hookup_file = "good.hookup.toml"', 'hookup = { source = "single coil", load = "line input", volume = '
+                  '{ resistance = "500k", taper = { measured = "../m.csv" } } }'))
+    yield of_job("no such hookup", ("bad.job.toml:8", "no.hookup.toml", "no such file"), ("good.hookup.toml", "no.hookup.toml"))
+    yield of_job("version to come", ("bad.job.toml:1", "version 2", "accepted is 1"), ("unsoldered_job = 1", "unsoldered_job = 2"))
+    yield Case("job: a hookup instead", ("good.hookup.toml", "unsoldered_job", "missing", "right file"),
+               ["render", "--job", "good.hookup.toml", "--out", "clips"])
+    yield of_job("nine candidates", ("9 candidates", "up to 8", "A to H"),
+                 ("[[candidate]]", '[[candidate]]\nhookup_file = "good.hookup.toml"\n' * 8 + "[[candidate]]"))
+    yield of_job("no candidate", ("[[candidate]] is missing", "hookup_file"), base=JOB[:JOB.index("[[candidate]]")])
+    yield of_job("no take", ("[take] is missing", "built_in = true"), ('[take]\nfile = "take.wav"\n', ""))
+    yield of_job("take without a file", ("take.file", "missing", "live = true"), ('file = "take.wav"\n', ""))
+    yield of_job("two takes", ("bad.job.toml:5", "take.built_in", "another take"), ("[settings]", "built_in = true\n[settings]"))
+    yield of_job("live take", ("bad.job.toml", "live", "render TAKE --job"), ('file = "take.wav"', "live = true"))
+    yield of_job("selected beyond the candidates", ("settings.selected", '"B"', '"A"'), ('selected = "A"', 'selected = "B"'))
+    yield of_job("both hookup and hookup_file", ("bad.job.toml:9", "candidate.0.hookup", "beside hookup_file"),
+                 ("dial = 7", "hookup = {}"))
+    yield of_job("hookup in it without a source", ("bad.job.toml", "block [source] is missing", "candidate A"),
+                 ('hookup_file = "good.hookup.toml"', "hookup = {}"))
+    yield of_job("dial off the scale", ("bad.job.toml:9", "candidate.0.dial", "11", "0 to 10"), ("dial = 7", "dial = 11"))
+    yield of_job("key with a slip", ("bad.job.toml:6", "selectd", '"selected" meant'), ("selected", "selectd"))
+    yield of_job("loop backwards", ("bad.job.toml:5", "take.loop", "after the start"), ("[settings]", "loop = [4, 2]\n[settings]"))
+    yield of_job("two candidates of one clip", ("two clips", "once"), arguments=[*call, "--dial", "5,5.001"])
+    yield of_job("job and hookup", ("--job and --hookup", "one of the two"), arguments=[*call, "--hookup", "good.hookup.toml"])
+    yield of_job("job named by its own clip list", ("clips.csv", "input", "never overwritten"),
+                 arguments=["render", "--job", "clips.csv", "--out", ".", "--force"], more=file("clips.csv", JOB))
+
+
+def catalogue_cases():
+    for name, old, new, words in (
+            ("load", '[load]\nresistance = "1M"\ncapacitance = "20 pF"\n', 'load = "valve amplifer input"\n',
+             ("valve amplifer input", '"valve amplifier input" meant', "unsoldered catalogue load", "[load]")),
+            ("cable by its words", '[cable]\nlength = "5 m"\ncapacitance_per_metre = "100 pF"\n', 'cable = "guitar cable"\n',
+             ("guitar cable", "cable, ", "meant", "unsoldered catalogue cable")),
+            ("block with a catalogue key", 'resistance = "1M"', 'catalogue = "amp"', ("load", '"amp"', "unsoldered catalogue load"))):
+        where = 'title = "Bench"\n'
+        changes = ((old, new),) if "catalogue =" in new else ((old, ""), (where, where + new))
+        line = "bad.hookup.toml:21" if "catalogue =" in new else "bad.hookup.toml:2"
+        yield Case(f"catalogue: no such {name}", (line, *words), KNOB, edited(*changes))
+    yield Case("catalogue: no such name by --set", ("--set load=line inputs", '"line input" meant'),
+               ["knob", "good.hookup.toml", "--set", "load=line inputs"])
+    yield Case("catalogue: a part of another kind", ("source.kind", '"pickup"', "unsoldered catalogue source"),
+               ["knob", "good.hookup.toml", "--set", 'source={catalogue="humbucker",kind="line"}'])
+    yield Case("catalogue: no such kind", ('"loads"', '"load" meant', "treble_bleed"), ["catalogue", "loads"])
+    yield Case("catalogue: table into a full device", ("standard output", "cannot be written", "disk full"), ["catalogue"],
+               status=3, how="full output")
+
+
+def selector_cases():
+    second = '[second.source]\nkind = "line"\nresistance = "100"\n'
+    of_pair = lambda name, words, more: Case(f"selector: {name}", words, KNOB, file("bad.hookup.toml", LINE + second + more))
+    yield of_pair("a blend beside one source alone", ("bad.hookup.toml", "blend", "use"),
+                  '[selector]\nuse = "first"\n[blend]\nresistance = "500k"\nlaw = "MN"\n')
+    yield of_pair("a blend of sources in series", ("bad.hookup.toml", "blend", "series"),
+                  '[selector]\njoined = "series"\n[blend]\nresistance = "500k"\nlaw = "MN"\n')
+    yield of_pair("a word it does not know", ("bad.hookup.toml:13", "selector.use", '"third"', '"second"'),
+                  '[selector]\nuse = "third"\n')
+    yield Case("selector: the second of one source", ("bad.hookup.toml", "second"), KNOB,
+               file("bad.hookup.toml", LINE + '[selector]\nuse = "second"\n'))
+
+
+def listening_cases():
+    """What a take was recorded through and what it is heard through."""
+    def through(text, *more):
+        return render("--recorded-through", text, *more)
+
+    # Without the end resistance of the good one.
+    yield Case("recorded through: dial 0", ("'dead.hookup.toml'", "dial 0", "nothing comes through", "FILE@7"),
+               through("dead.hookup.toml@0"), file("dead.hookup.toml", HOOKUP.replace('end_resistance = "50"', "")))
+    for name, arguments, words in [
+        ("dial 11", through("good.hookup.toml@11"), ("--recorded-through", "dial 11", "0 to 10")),
+        ("dial in words", through("good.hookup.toml@seven"), ("--recorded-through", '"seven"', "0 to 10", "7.5")),
+        ("no dial behind the @", through("good.hookup.toml@"), ("--recorded-through", '""', "0 to 10")),
+        ("unknown file", through("no.hookup.toml@7"),
+         ("--recorded-through", "no.hookup.toml", "no such file", "nothing, instrument, or a hookup file")),
+        ("unknown word", through("amp"), ("--recorded-through", "amp", "nothing, instrument, or a hookup file")),
+        ("no word", through(""), ("--recorded-through", '""', "nothing, instrument")),
+        ("boost limit 61 dB", through("instrument", "--boost-limit", "61"), ("--boost-limit", "61 dB", "0 to 60", "24")),
+        ("boost limit -1 dB", through("instrument", "--boost-limit", "-1"), ("--boost-limit", "-1 dB", "0 to 60")),
+        ("boost limit in words", through("instrument", "--boost-limit", "much"), ("--boost-limit", '"much"', "0 to 60")),
+    ]:
+        yield Case(f"recorded through: {name}", words, arguments)
+
+    def heard(name, words, content=None, make=None):
+        return Case(f"heard through: {name}", words, render("--heard-through", "ir.wav"),
+                    make or (file("ir.wav", content) if content is not None else lambda folder: None))
+
+    with_nan = tone(100)
+    with_nan[50, 0] = np.nan
+    yield heard("missing impulse response", ("impulse response 'ir.wav'", "No such file", "WAV"))
+    yield heard("impulse response of another rate", ("44100 Hz", "48000 Hz", "resample"), wav(tone(100), rate=44100))
+    yield heard("impulse response of more channels", ("2 channels", "take of 1", "used for all"), wav(tone(100, 2)))
+    yield heard("silent impulse response", ("ir.wav", "silent", "every sample is 0"), wav(0 * tone(100)))
+    yield heard("empty impulse response", ("ir.wav", "0 samples"), wav(tone(0)))
+    yield heard("impulse response of 11 s", ("ir.wav", "10 s", "cut it"), wav(tone(11 * 48000)))
+    yield heard("NaN in the impulse response", ("impulse response 'ir.wav'", "sample 50", "repair"), wav(with_nan, code=3))
+    yield heard("text for an impulse response", ("impulse response 'ir.wav'", "not a sound file", "WAV"), "A letter.\n" * 40)
+    yield heard("a folder", ("impulse response 'ir.wav'", "folder"), make=lambda folder: (folder / "ir.wav").mkdir())
+    yield Case("heard through: no word", ("--heard-through", '""', "guitar-loudspeaker"), render("--heard-through", ""))
+    clip = "take_good_dial-10.00.wav"
+    for name, option in [("impulse response", "--heard-through"), ("hookup it was recorded through", "--recorded-through")]:
+        content = wav(tone(100)) if option == "--heard-through" else HOOKUP
+        yield Case(f"output: the {name} itself with --force", (clip, "input", "never overwritten", "another folder"),
+                   render(option, f"clips/{clip}", "--force"), file(f"clips/{clip}", content))
+
+
 def all_cases():
-    for part in (toml_cases, key_cases, value_cases, taper_cases, network_cases, call_cases, sound_cases, output_cases):
+    for part in (toml_cases, key_cases, value_cases, taper_cases, network_cases, call_cases, sound_cases, format_cases,
+                 output_cases, job_cases, catalogue_cases, selector_cases, listening_cases):
         yield from part()

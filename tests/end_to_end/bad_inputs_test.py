@@ -14,6 +14,7 @@ import sys
 import tempfile
 import textwrap
 import unittest
+import wave
 
 HERE = pathlib.Path(__file__).resolve().parent
 sys.path[:0] = [str(HERE), str(HERE.parent / "reference")]
@@ -167,17 +168,30 @@ class BadInputs(unittest.TestCase):
         self.assertEqual((folder / clip).read_bytes()[:4], b"RIFF")
         self.assertEqual((folder / "clips/mine.txt").read_text(encoding="utf-8"), "mine")
 
-    def test_wav_cut_short_is_played_as_far_as_it_goes_and_said_so(self):
+    def test_takes_cut_short_are_played_as_far_as_they_go_and_said_so(self):
         samples = bad_inputs.tone()
-        whole = bad_inputs.wav(samples)
-        case = bad_inputs.Case("cut", (), bad_inputs.render(take="cut.wav"),
-                               bad_inputs.file("cut.wav", whole[:44 + 2 * 4800]))
-        folder, _, done = self.runs.run(case)
+        for name, whole, head in (("cut.wav", bad_inputs.wav(samples), 44), ("cut.aiff", bad_inputs.aiff(samples), 54),
+                                  ("long.wav", bad_inputs.rf64(samples), 80)):
+            case = bad_inputs.Case("cut", (), bad_inputs.render(take=name),
+                                   bad_inputs.file(name, whole[:head + 2 * 4800]))
+            folder, _, done = self.runs.run(case)
+            self.assertEqual(done.returncode, 0, done.stderr)
+            for word in (name, "cut short", "9600 bytes", "0.1 s"):
+                self.assertIn(word, done.stderr)
+            with wave.open(str(folder / f"clips/{name.split('.')[0]}_good_dial-10.00.wav")) as clip:
+                self.assertEqual(clip.getnframes(), 4800)
+
+    def test_w64_cut_short_likewise(self):
+        def cut(folder):
+            bad_inputs.sox(folder, "take.wav", "whole.w64")
+            (folder / "cut.w64").write_bytes((folder / "whole.w64").read_bytes()[:-9600])
+
+        folder, _, done = self.runs.run(bad_inputs.Case("cut", (), bad_inputs.render(take="cut.w64"), cut))
         self.assertEqual(done.returncode, 0, done.stderr)
-        for word in ("cut.wav", "cut short", "9600 bytes", "0.1 s"):
+        for word in ("cut.w64", "cut short", "9600 bytes", "0.1 s"):
             self.assertIn(word, done.stderr)
-        clip = folder / "clips/cut_good_dial-10.00.wav"
-        self.assertEqual((clip.stat().st_size - 44) // 3, 4800)
+        with wave.open(str(folder / "clips/cut_good_dial-10.00.wav")) as clip:
+            self.assertEqual(clip.getnframes(), 4800)
 
 
 def print_table():

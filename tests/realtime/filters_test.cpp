@@ -6,6 +6,7 @@
 #include <mutex>
 #include <vector>
 
+#include "dsp/convolver.h"
 #include "dsp/moving_pot_filter.h"
 #include "tests/catch.h"
 #include "tests/dsp/example_hookups.h"
@@ -80,5 +81,24 @@ TEST_CASE("A filter's process neither allocates nor locks nor calls the system, 
       CHECK(counts.locks == 0);
       CHECK(runs_without_system_calls(play));
     }
+  }
+}
+
+TEST_CASE("A convolver's process neither allocates nor locks nor calls the system, in one piece or in parts") {
+  for (const int taps : {500, 20000}) {
+    Fir fir;
+    fir.taps.assign(static_cast<std::size_t>(taps), 0.01);
+    Convolver convolver(std::make_shared<const ConvolutionPlan>(fir));
+    Blocks sound;
+    const auto play = [&] {
+      for (int done = 0; done < 2 * convolver.latency_frames(); done += Blocks::frames) {
+        sound.in_parts([&](double* const* now, int size, const double*) { convolver.process(now[0], now[0], size); });
+      }
+      convolver.reset();
+    };
+    const Counts counts = counted(play);
+    CHECK(counts.allocations == 0);
+    CHECK(counts.locks == 0);
+    CHECK(runs_without_system_calls(play));
   }
 }

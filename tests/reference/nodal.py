@@ -7,60 +7,110 @@ import numpy as np
 import scipy.linalg
 import scipy.optimize
 
-from hookup_model import EMF, GROUND
+from hookup_model import GROUND
 
 BOLTZMANN = 1.380649e-23  # J/K, exact (SI since 2019)
 
 
-def _matrices(circuit, extra_nodes=()):
-    """Conductance, capacitance and inverse-inductance matrices over the free nodes and, last column, the emf."""
-    index = {n: i for i, n in enumerate(list(circuit.nodes))}
-    n = len(index)
-    index[EMF] = n
-    matrices = {k: np.zeros((n + 1, n + 1)) for k in "RCL"}
-    for p in circuit.parts:
-        value = p.value if p.kind == "C" else 1.0 / p.value
-        a, b = index.get(p.a), index.get(p.b)
-        m = matrices[p.kind]
-        for i, j in ((a, b), (b, a)):
-            if i is not None:
-                m[i, i] += value
-                if j is not None:
-                    m[i, j] -= value
-    return index, n, matrices
+class _System:
+    """Conductance, capacitance and inverse-inductance over the free node voltages and, last column, the emf.
+
+    A generator's node follows its other node and the take, an amplifier's follows its control; `voltages` says how every
+    node follows the free ones, `currents` which nodes' currents add up to zero (a generator with its other node).
+    """
+
+    def __init__(self, circuit):
+        names = sorted({n for p in [*circuit.parts, *circuit.generators] for n in (p.a, p.b)} - {GROUND} | {circuit.output})
+        self.row = {n: i for i, n in enumerate(names)}
+        led = {p.a: (p.b, 1.0, p.value) for p in circuit.generators}
+        led |= {p.a: (p.control, p.value, 0.0) for p in circuit.parts if p.kind == "E"}
+        free = [n for n in names if n not in led and n != GROUND]
+        n = self.unknowns = len(free)
+        self.voltages = np.zeros((len(names), n + 1))
+        self.currents = np.zeros((n, len(names)))
+        for i, name in enumerate(free):
+            self.currents[i, self.row[name]] = 1.0
+        for p in circuit.generators:
+            if p.b in free:
+                self.currents[free.index(p.b), self.row[p.a]] = 1.0
+
+        def follow(name):
+            """How a node's voltage follows the free ones and the emf."""
+            line = np.zeros(n + 1)
+            if name in led:
+                master, gain, own = led[name]
+                line += gain * follow(master)
+                line[n] += own
+            elif name != GROUND:
+                line[free.index(name)] = 1.0
+            return line
+
+        for name in names:
+            self.voltages[self.row[name]] = follow(name)
+        self.full = {k: np.zeros((len(names), len(names))) for k in "RCL"}
+        for p in circuit.parts:
+            if p.kind == "E":
+                continue
+            value = p.value if p.kind == "C" else 1.0 / p.value
+            a, b = self.row.get(p.a), self.row.get(p.b)
+            m = self.full[p.kind]
+            for i, j in ((a, b), (b, a)):
+                if i is not None:
+                    m[i, i] += value
+                    if j is not None:
+                        m[i, j] -= value
+        self.matrices = {k: self.currents @ m @ self.voltages for k, m in self.full.items()}
+
+    def admittance(self, hertz):
+        w = 2.0 * np.pi * hertz[:, None, None]
+        return self.matrices["R"] + 1j * w * self.matrices["C"] + self.matrices["L"] / (1j * w)
+
+
+def _system_of(circuit):
+    """Made once a circuit: peaks and corners ask for one frequency at a time."""
+    if not hasattr(circuit, "system"):
+        circuit.system = _System(circuit)
+    return circuit.system
 
 
 def transfer(circuit, hertz, delay=False):
     """H = V(output)/emf at each frequency; with `delay` also the group delay in seconds, analytic."""
     hertz = np.atleast_1d(np.asarray(hertz, float))
-    if circuit.silent or circuit.output == EMF:
-        h = np.full(hertz.shape, 0.0 if circuit.silent else 1.0, complex)
+    if circuit.silent:
+        h = np.zeros(hertz.shape, complex)
         return (h, np.zeros(hertz.shape)) if delay else h
-    index, n, m = _matrices(circuit)
-    w = 2.0 * np.pi * hertz[:, None, None]
-    y = m["R"] + 1j * w * m["C"] + m["L"] / (1j * w)
-    v = np.linalg.solve(y[:, :n, :n], -y[:, :n, n:])
-    h = v[:, index[circuit.output], 0]
+    s = _system_of(circuit)
+    n, m = s.unknowns, s.matrices
+    y = s.admittance(hertz)
+    out = s.voltages[s.row[circuit.output]]
+    v = np.linalg.solve(y[:, :, :n], -y[:, :, n:])
+    full = np.concatenate([v, np.ones((len(hertz), 1, 1))], axis=1)
+    h = (full[:, :, 0] @ out)
     if not delay:
         return h
+    w = 2.0 * np.pi * hertz[:, None, None]
     dy = 1j * m["C"] + 1j * m["L"] / w**2
-    full = np.concatenate([v, np.ones((len(hertz), 1, 1))], axis=1)
-    dv = np.linalg.solve(y[:, :n, :n], -(dy @ full)[:, :n])
+    dv = np.linalg.solve(y[:, :, :n], -(dy @ full))
     with np.errstate(divide="ignore", invalid="ignore"):  # no signal, no delay
-        return h, -np.imag(dv[:, index[circuit.output], 0] / h)
+        return h, -np.imag(dv[:, :, 0] @ out[:n] / h)
+
+
+def _from_currents(circuit, hertz):
+    """(system, V(output) for one ampere into every node: frequencies by nodes)."""
+    s = _system_of(circuit)
+    n = s.unknowns
+    out = np.broadcast_to(s.voltages[s.row[circuit.output], :n, None].astype(complex), (len(hertz), n, 1))
+    z = np.linalg.solve(np.swapaxes(s.admittance(hertz)[:, :, :n], 1, 2), out)[:, :, 0]
+    return s, z @ s.currents
 
 
 def impedance(circuit, hertz):
     """Looking back into the output with the emf silent."""
     hertz = np.atleast_1d(np.asarray(hertz, float))
-    if circuit.silent or circuit.output == EMF:
+    if circuit.output == GROUND:
         return np.zeros(hertz.shape, complex)
-    index, n, m = _matrices(circuit)
-    w = 2.0 * np.pi * hertz[:, None, None]
-    y = (m["R"] + 1j * w * m["C"] + m["L"] / (1j * w))[:, :n, :n]
-    unit = np.zeros((n, 1))
-    unit[index[circuit.output]] = 1.0
-    return np.linalg.solve(y, np.broadcast_to(unit.astype(complex), (len(hertz), n, 1)))[:, index[circuit.output], 0]
+    s, z = _from_currents(circuit, hertz)
+    return z[:, s.row[circuit.output]]
 
 
 def decibel(h):
@@ -70,15 +120,16 @@ def decibel(h):
 
 def slowest_seconds(circuit):
     """The longest time constant of the circuit (0 when it has no memory)."""
-    index, n, m = _matrices(circuit)
-    g, c, l = (m[k][:n, :n] for k in "RCL")
+    s = _system_of(circuit)
+    n = s.unknowns
+    g, c, l = (s.matrices[k][:, :n] for k in "RCL")
     # Node voltages v and their flux integrals f: C dv/dt = -G v - (1/L) f, df/dt = v.
     # Fluxes are scaled by the microsecond so that both halves are of one size.
     if n == 0:
         return 0.0
-    s = 1e-4
+    unit = 1e-4
     zero, one = np.zeros((n, n)), np.eye(n)
-    a = np.block([[-g, -l * s], [one / s, zero]])
+    a = np.block([[-g, -l * unit], [one / unit, zero]])
     b = np.block([[c, zero], [zero, one]])
     alpha, beta = scipy.linalg.eig(a, b, right=False, homogeneous_eigvals=True)
     with np.errstate(divide="ignore", invalid="ignore"):
@@ -130,9 +181,16 @@ def peaks(circuit, low=20.0, high=1e5, points=20001):
 
 
 def johnson_volts(circuit, low=20.0, high=20e3, kelvin=293.15, points=6001):
-    """Integrated Johnson noise at the output, from 4kT Re Z."""
+    """Integrated Johnson noise at the output: 4kT/R of every resistor through its own way to the output."""
     from scipy.integrate import simpson
+    if circuit.output == GROUND:
+        return 0.0
     x = np.linspace(np.log(low), np.log(high), points)
     f = np.exp(x)
-    density = 4.0 * BOLTZMANN * kelvin * np.real(impedance(circuit, f))
+    s, z = _from_currents(circuit, f)
+    z = np.concatenate([z, np.zeros((points, 1))], axis=1)  # last: ground
+    density = np.zeros(points)
+    for p in circuit.parts:
+        if p.kind == "R":
+            density += 4.0 * BOLTZMANN * kelvin / p.value * np.abs(z[:, s.row.get(p.a, -1)] - z[:, s.row.get(p.b, -1)]) ** 2
     return float(np.sqrt(simpson(density * f, x=x)))

@@ -50,10 +50,10 @@ KNOB = ("dial,degrees,element_fraction,level_db,treble_lost_db,treble_5k_1k_db,c
 CLIPS = "file,hookup,dial,gain_db,peak_dbfs,peak_dbtp,loudness_lufs"
 
 
-def response(hookup_file, dials, hertz):
+def response(hookup_file, dials, hertz, *words):
     """{dial: list of rows as floats (None: empty)} in the order of `hertz`."""
     out = call("response", hookup_file, "--dial", ",".join(f"{d:g}" for d in dials), "--at",
-               ",".join(repr(float(f)) for f in hertz))
+               ",".join(repr(float(f)) for f in hertz), *words)
     rows = [{k: number(v) for k, v in row.items()} for row in table(out, RESPONSE)]
     if len(rows) != len(dials) * len(hertz):
         raise AssertionError(f"{len(rows)} rows for {len(dials)} dials and {len(hertz)} frequencies")
@@ -67,6 +67,7 @@ def response(hookup_file, dials, hertz):
     return found
 
 
-def knob(hookup_file, steps=41):
-    return [{k: number(v) for k, v in row.items()} for row in table(call("knob", hookup_file, "--steps", steps), KNOB)]
+def knob(hookup_file, steps=41, *words):
+    text = call("knob", hookup_file, "--steps", steps, *words)
+    return [{k: number(v) for k, v in row.items()} for row in table(text, KNOB)]
 

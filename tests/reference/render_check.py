@@ -31,12 +31,14 @@ def settles(model, dials=DIALS):
     return settling_s(model, dials) < LONGEST_SETTLING_S
 
 
-def multisine(rate, settle_s, rng, sines=60):
-    """(take, bins, length of the last stretch). Fades in over the first 20 ms, ends on a whole period."""
+def multisine(rate, settle_s, rng, sines=60, share=slice(None)):
+    """(take, bins, length of the last stretch, its start). Fades in over the first 20 ms, ends on a whole period.
+
+    `share`: which of the sines, where channels of one take are to be told apart."""
     period = int(round(0.2 * rate))
     top = min(20e3, 0.45 * rate)
     bins = np.unique(np.round(np.geomspace(20.0, top, sines) * period / rate).astype(int))
-    bins = bins[bins * rate / period <= top]
+    bins = bins[bins * rate / period <= top][share]
     n = np.arange(period)
     wave = sum(np.cos(2 * np.pi * (k * n / period) + rng.uniform(0, 2 * np.pi)) for k in bins)
     wave *= 0.9 / np.max(np.abs(wave))
@@ -81,16 +83,44 @@ def measure(folder, text, model, rate, seed, dials=DIALS):
     return answers
 
 
+class Tally:
+    """The worst deviations seen and those outside the bounds."""
+
+    def __init__(self):
+        self.worst = {"db": (0.0, ""), "deg": (0.0, ""), "quiet": (0.0, ""), "points": 0, "clips": 0}
+        self.failures = []
+
+    def note(self, what, value, bound, where):
+        if value > self.worst[what][0]:
+            self.worst[what] = (value, where)
+        if not value <= bound:
+            self.failures.append(f"{where}: {what} {value:.3g} (at most {bound})")
+
+    def clip(self, where, hertz, got, due):
+        """One channel of one clip: measured against true transfer, bin by bin."""
+        self.worst["clips"] += 1
+        for f, g, h in zip(hertz, got, due):
+            at = f"{where}, {f:.0f} Hz, {nodal.decibel(h):.1f} dB"
+            if abs(h) < LEFT_OUT:
+                continue
+            self.worst["points"] += 1
+            if abs(h) < QUIET:
+                self.note("quiet", abs(g - h), QUIET_BOUND, at)
+                continue
+            self.note("db", abs(nodal.decibel(g) - nodal.decibel(h)), BOUND_DB, at)
+            self.note("deg", abs(np.degrees(np.angle(g / h))), BOUND_DEG, at)
+
+
+def nodal_against_ngspice(circuits):
+    """The nodal analysis used here is the one ngspice makes: worst relative difference."""
+    grid, spiced = spice.transfers(circuits)
+    return max(np.max(np.abs(nodal.transfer(c, grid)[np.abs(h) > 1e-7] / h[np.abs(h) > 1e-7] - 1), initial=0.0)
+               for c, h in zip(circuits, spiced))
+
+
 def compare(seeds, rates=RATES, dials=DIALS):
     """Returns (worst, failures)."""
-    worst = {"db": (0.0, ""), "deg": (0.0, ""), "quiet": (0.0, ""), "points": 0, "clips": 0}
-    failures = []
-
-    def note(what, value, bound, where):
-        if value > worst[what][0]:
-            worst[what] = (value, where)
-        if not value <= bound:
-            failures.append(f"{where}: {what} {value:.3g} (at most {bound})")
+    tally = Tally()
 
     circuits = []
     cases = []
@@ -98,30 +128,18 @@ def compare(seeds, rates=RATES, dials=DIALS):
         text, model = random_hookups.hookup(f"held {seed}", dials=dials, accept=lambda m: settles(m, dials))
         cases.append((seed, text, model))
         circuits += [model.circuit(d) for d in dials]
-    grid, spiced = spice.transfers(circuits)  # the nodal analysis used below is the one ngspice makes
-    worst["nodal"] = max(np.max(np.abs(nodal.transfer(c, grid)[np.abs(h) > 1e-7] / h[np.abs(h) > 1e-7] - 1), initial=0.0)
-                         for c, h in zip(circuits, spiced))
+    tally.worst["nodal"] = nodal_against_ngspice(circuits)
     with tempfile.TemporaryDirectory() as folder:
         for seed, text, model in cases:
             for rate in rates:
                 try:
                     answers = measure(pathlib.Path(folder), text, model, rate, seed_number(seed), dials)
                 except AssertionError as error:
-                    failures.append(f"held {seed} at {rate} Hz: {error}\n{text}")
+                    tally.failures.append(f"held {seed} at {rate} Hz: {error}\n{text}")
                     continue
                 for dial, hertz, got, due in answers:
-                    worst["clips"] += 1
-                    for f, g, h in zip(hertz, got, due):
-                        where = f"held {seed}, {rate} Hz, dial {dial}, {f:.0f} Hz, {nodal.decibel(h):.1f} dB"
-                        if abs(h) < LEFT_OUT:
-                            continue
-                        worst["points"] += 1
-                        if abs(h) < QUIET:
-                            note("quiet", abs(g - h), QUIET_BOUND, where)
-                            continue
-                        note("db", abs(nodal.decibel(g) - nodal.decibel(h)), BOUND_DB, where)
-                        note("deg", abs(np.degrees(np.angle(g / h))), BOUND_DEG, where)
-    return worst, failures
+                    tally.clip(f"held {seed}, {rate} Hz, dial {dial}", hertz, got, due)
+    return tally.worst, tally.failures
 
 
 def seed_number(seed):
@@ -131,10 +149,15 @@ def seed_number(seed):
 
 def check(test, name, seeds, rates=RATES):
     worst, failures = compare(seeds, rates)
-    print(f"{name}: {len(seeds)} random hookups, dials {DIALS}, rates {rates}, {worst['clips']} clips, {worst['points']} "
+    report(test, name, f"{len(seeds)} random hookups, dials {DIALS}, rates {rates}", worst, failures,
+           50 * len(seeds) * len(rates))
+
+
+def report(test, name, what, worst, failures, least_points):
+    print(f"{name}: {what}, {worst['clips']} clips, {worst['points']} "
           f"points: worst {worst['db'][0]:.4f} dB ({worst['db'][1]}), {worst['deg'][0]:.4f} degrees ({worst['deg'][1]}), "
           f"below -80 dB {nodal.decibel(worst['quiet'][0]):.1f} dB re emf ({worst['quiet'][1]}); "
           f"own nodal analysis against ngspice {worst['nodal']:.1e}")
     test.assertLess(worst["nodal"], 1e-6)
-    test.assertGreater(worst["points"], 50 * len(seeds) * len(rates))
+    test.assertGreater(worst["points"], least_points)
     test.assertEqual(len(failures), 0, f"{len(failures)} points outside:\n" + "\n".join(failures[:25]))

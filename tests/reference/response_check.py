@@ -9,6 +9,7 @@ import nodal
 import program
 import random_hookups
 import spice
+from hookup_model import Hookup
 
 LEVEL_BOUND_DB = 1e-3
 PHASE_BOUND_DEG = 1e-2
@@ -17,14 +18,19 @@ FLOOR = 1e-6  # -120 dB re emf
 DELAY_BOUND = 1e-5
 
 
-def compare(seeds, dials=4, extras=True):
-    """One program call a hookup, one ngspice process for all. Returns (worst deviations, failures)."""
+def compare(seeds, dials=4, extras=True, family=random_hookups):
+    """One program call a hookup (two with a stereo gang), one ngspice process for all. Returns (worst deviations, failures).
+
+    `family`: the module that draws the hookups."""
     cases = []
     for seed in seeds:
         chosen = random_hookups.dials_of(seed, dials)
-        text, model = random_hookups.hookup(seed, extras=extras, dials=chosen)
-        cases.append((seed, text, [(d, model.circuit(d)) for d in chosen]))
-    grid, spiced = spice.transfers([c for _, _, marks in cases for _, c in marks])
+        text, model = family.hookup(seed, extras=extras, dials=chosen)
+        cases.append((seed, text, (), [(d, model.circuit(d)) for d in chosen]))
+        if "right = {" in text:
+            model = Hookup(text, right=True)
+            cases.append((f"{seed} right", text, ("--right",), [(d, model.circuit(d)) for d in chosen]))
+    grid, spiced = spice.transfers([c for *_, marks in cases for _, c in marks])
     spiced = iter(spiced)
     worst = {"level_db": (0.0, ""), "phase_deg": (0.0, ""), "delay": (0.0, ""), "points": 0, "hookups": len(cases),
              "nodal": 0.0}
@@ -37,12 +43,12 @@ def compare(seeds, dials=4, extras=True):
             failures.append(f"{where}: {what} off by {value:.3g}")
 
     with tempfile.TemporaryDirectory() as folder:
-        for seed, text, marks in cases:
+        for seed, text, words, marks in cases:
             file = pathlib.Path(folder) / "case.hookup.toml"
             file.write_text(text, encoding="utf-8")
             reference = [next(spiced) for _ in marks]
             try:
-                answers = program.response(file, [d for d, _ in marks], grid)
+                answers = program.response(file, [d for d, _ in marks], grid, *words)
             except AssertionError as error:
                 failures.append(f"seed {seed}: {error}\n{text}")
                 continue
@@ -80,8 +86,8 @@ def report(name, worst):
           f"own nodal analysis against ngspice {worst['nodal']:.1e}")
 
 
-def check(test, name, seeds, extras=True):
-    worst, failures = compare(seeds, extras=extras)
+def check(test, name, seeds, extras=True, family=random_hookups):
+    worst, failures = compare(seeds, extras=extras, family=family)
     report(name, worst)
     test.assertGreater(worst["points"], 20 * len(seeds))
     test.assertLess(worst["nodal"], 1e-6)  # the delay reference is the same circuit ngspice solved

@@ -369,10 +369,11 @@ TEST_CASE("Impossible values and shapes are refused, none accepted or fatal") {
       {"volume.source_on=bottom", "\"top\", \"wiper\""},
       {"volume.tolerance=20", "\"20%\""},
       {"volume.tolerance=120%", "0% to 100%"},
-      {"volume.right={resistance=5}", "this version"},
+      {"volume.right={resistance=5}", "5 ohm"},
+      {"volume.dial=4", "--dial 7"},
       {"volume=5", "[volume]"},
       {"volume=big pot", "catalogue"},
-      {"load=valve amplifier input", "catalogue"},
+      {"load=valve amplifier inputs", "catalogue"},
       {"load.resistance=0", "1 ohm to 10G"},
       {"load.resistance=none", "no number"},
       {"load.coupling=0", "0.01 pF"},
@@ -411,10 +412,10 @@ TEST_CASE("Impossible values and shapes are refused, none accepted or fatal") {
       {"listening={treble_band=[5000,2000]}", "lower to a higher"},
       {"listening={treble_band=[\"5k\",\"2 H\"]}", "an inductance"},
       {"listening={middle_band=[1,2]}", "\"body_band\""},
-      {"second={}", "this version"},
-      {"blend={}", "this version"},
-      {"then=[{}]", "this version"},
-      {"selector={}", "this version"}};
+      {"second={}", "[second.source]"},
+      {"blend={}", "\"MN\", \"linear\""},
+      {"then=[{}]", "the stage holds nothing"},
+      {"selector={use=\"first\"}", "nothing to select"}};
   for (const Row& row : rows) {
     CAPTURE(row.setting);
     const std::string message = refusal(kPickup, {row.setting});

@@ -142,8 +142,8 @@ TEST_CASE("While the knob turns the level follows it at each time of the take") 
   const Sound take = sine(0.5, 1000, 2);
   write_sound(folder / "take.wav", take);
   RenderRequest request = request_for(folder / "take.wav", folder / "clips");
-  request.turn = unsoldered::parse_knob_turn("0.5:0,1.5:10", "--turn");
-  request.depth = Depth::float32;
+  request.turns = {unsoldered::parse_knob_turn("0.5:0,1.5:10", "--turn")};
+  request.format.depth = Depth::float32;
   const RenderResult result = render(request);
   CHECK(result.clips.at(0).file == "take_plain_turn.wav");
   CHECK_FALSE(result.clips.at(0).dial.has_value());
@@ -176,11 +176,11 @@ TEST_CASE("A loud set is lowered by one common gain to -1 dBFS in integer format
   CHECK(result.messages.size() == 1);
 
   request.folder = folder / "16";
-  request.depth = Depth::pcm16;
+  request.format.depth = Depth::pcm16;
   CHECK_THAT(render(request).clips.at(1).peak_dbfs, WithinAbs(-1, 0.001));
 
   request.folder = folder / "float";
-  request.depth = Depth::float32;
+  request.format.depth = Depth::float32;
   const RenderResult free = render(request);
   CHECK(free.clips.at(1).gain_db == 0);
   CHECK_THAT(free.clips.at(1).peak_dbfs, WithinAbs(20 * std::log10(2.0), 0.15));
@@ -202,7 +202,7 @@ TEST_CASE("Silence has the level -inf and stays silence at every depth") {
   RenderRequest request = request_for(folder / "silence.wav", folder / "clips");
   request.force = true;
   for (const Depth depth : {Depth::pcm16, Depth::pcm24, Depth::float32}) {
-    request.depth = depth;
+    request.format.depth = depth;
     const RenderResult result = render(request);
     CHECK_THAT(csv(result.clips), ContainsSubstring(",10,0,-inf,,\n"));
     CHECK_THAT(json(result.clips), ContainsSubstring("\"peak_dbfs\": null"));
@@ -216,7 +216,7 @@ TEST_CASE("The clips are the same bytes whatever the number of threads", "[threa
   write_sound(folder / "take.flac", loud);
   RenderRequest request = request_for(folder / "take.flac", folder / "1");
   request.dials = {10, 9, 8, 7, 6, 5, 4, 3, 2, 1, 0};
-  request.depth = Depth::pcm16;
+  request.format.depth = Depth::pcm16;
   render(request);
   for (const int jobs : {2, 7, 64}) {
     request.jobs = jobs;
@@ -343,7 +343,7 @@ TEST_CASE("A knob the hookup does not have cannot turn") {
   const TemporaryFolder folder;
   write_sound(folder / "take.wav", sine(0.5, 440, 0.1));
   RenderRequest request = request_for(folder / "take.wav", folder / "clips");
-  request.turn = unsoldered::parse_knob_turn("tone=0:10,4:0", "--turn");
+  request.turns = {unsoldered::parse_knob_turn("tone=0:10,4:0", "--turn")};
   CHECK_THAT(message_of<InputError>([&] { render(request); }),
              ContainsSubstring("plain.hookup.toml") && ContainsSubstring("tone"));
   CHECK_FALSE(fs::exists(folder / "clips"));

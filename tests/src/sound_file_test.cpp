@@ -18,8 +18,11 @@ using Catch::Matchers::ContainsSubstring;
 using Catch::Matchers::WithinAbs;
 using namespace unsoldered::test;
 using unsoldered::CannotError;
+using unsoldered::ClipFormat;
+using unsoldered::ClipText;
 using unsoldered::ClipWriter;
 using unsoldered::Depth;
+using unsoldered::FileKind;
 using unsoldered::InputError;
 using unsoldered::SoundFileTake;
 
@@ -45,7 +48,7 @@ std::string refusal(const std::filesystem::path& path) {
 /// One channel through a writer, as it stands in the file.
 std::vector<double> written(const std::filesystem::path& path, Depth depth, const std::vector<double>& samples,
                             double gain = 1, const std::string& name = "clip.wav") {
-  ClipWriter writer(path, name, {48000, 1, static_cast<std::int64_t>(samples.size())}, depth);
+  ClipWriter writer(path, name, {48000, 1, static_cast<std::int64_t>(samples.size())}, {FileKind::wav, depth});
   const double* channel = samples.data();
   writer.write(&channel, static_cast<int>(samples.size()), gain);
   writer.close();
@@ -54,11 +57,14 @@ std::vector<double> written(const std::filesystem::path& path, Depth depth, cons
 
 }  // namespace
 
-TEST_CASE("Takes in WAV and FLAC come back sample for sample in blocks of any size") {
+TEST_CASE("Takes in WAV, FLAC, AIFF and W64 come back sample for sample in blocks of any size") {
   const TemporaryFolder folder;
   for (const int format :
        {SF_FORMAT_WAV | SF_FORMAT_PCM_16, SF_FORMAT_WAV | SF_FORMAT_PCM_24, SF_FORMAT_WAV | SF_FORMAT_FLOAT,
         SF_FORMAT_WAV | SF_FORMAT_DOUBLE, SF_FORMAT_WAV | SF_FORMAT_PCM_U8, SF_FORMAT_WAVEX | SF_FORMAT_PCM_24,
+        SF_FORMAT_W64 | SF_FORMAT_PCM_16, SF_FORMAT_W64 | SF_FORMAT_FLOAT, SF_FORMAT_AIFF | SF_FORMAT_PCM_S8,
+        SF_FORMAT_AIFF | SF_FORMAT_PCM_16, SF_FORMAT_AIFF | SF_FORMAT_PCM_24, SF_FORMAT_AIFF | SF_FORMAT_FLOAT,
+        SF_FORMAT_AIFF | SF_FORMAT_PCM_16 | SF_ENDIAN_LITTLE, SF_FORMAT_AIFF | SF_FORMAT_ULAW,
         SF_FORMAT_RF64 | SF_FORMAT_PCM_32, SF_FORMAT_FLAC | SF_FORMAT_PCM_16, SF_FORMAT_FLAC | SF_FORMAT_PCM_24}) {
     Sound sound = sine(0.7, 997, 0.11, 2, 44100);
     sound.format = format;
@@ -90,13 +96,13 @@ TEST_CASE("Channels from 1 to 8 and rates from 8 to 384 kHz are accepted, others
   CHECK_THAT(refusal_of(1, 384001), ContainsSubstring("384001 Hz"));
 }
 
-TEST_CASE("What is not a WAV or FLAC file is refused with its name and the reason") {
+TEST_CASE("What is not a file of these kinds is refused with its name and the reason") {
   const TemporaryFolder folder;
   CHECK_THAT(refusal(folder / "no such.wav"),
              ContainsSubstring("no such.wav") && ContainsSubstring("No such file or directory"));
   CHECK_THAT(refusal(folder.path()), ContainsSubstring("is a folder"));
   write_text(folder / "text.wav", "title = \"not a sound\"\n");
-  CHECK_THAT(refusal(folder / "text.wav"), ContainsSubstring("not a sound file") && ContainsSubstring("WAV or FLAC"));
+  CHECK_THAT(refusal(folder / "text.wav"), ContainsSubstring("not a sound file") && ContainsSubstring("WAV, FLAC"));
   write_text(folder / "nothing.wav", "");
   CHECK_THAT(refusal(folder / "nothing.wav"), ContainsSubstring("not a sound file"));
   write_text(folder / "file", "");
@@ -105,9 +111,12 @@ TEST_CASE("What is not a WAV or FLAC file is refused with its name and the reaso
   CHECK_THAT(refusal(folder / "pipe"), ContainsSubstring("not a regular file"));
 
   Sound sound = sine(0.5, 440, 0.1);
-  sound.format = SF_FORMAT_AIFF | SF_FORMAT_PCM_16;
-  write_sound(folder / "take.aiff", sound);
-  CHECK_THAT(refusal(folder / "take.aiff"), ContainsSubstring("AIFF") && ContainsSubstring("convert"));
+  sound.format = SF_FORMAT_AU | SF_FORMAT_PCM_16;
+  write_sound(folder / "take.au", sound);
+  CHECK_THAT(refusal(folder / "take.au"), ContainsSubstring("\"AU") && ContainsSubstring("convert"));
+  sound.format = SF_FORMAT_AIFF | SF_FORMAT_IMA_ADPCM;
+  write_sound(folder / "packed.aiff", sound);
+  CHECK_THAT(refusal(folder / "packed.aiff"), ContainsSubstring("AIFF") && ContainsSubstring("unusual"));
   sound.format = SF_FORMAT_OGG | SF_FORMAT_VORBIS;
   write_sound(folder / "take.wav", sound);  // the name does not decide
   CHECK_THAT(refusal(folder / "take.wav"), ContainsSubstring("OGG"));
@@ -155,9 +164,9 @@ TEST_CASE("A FLAC take that does not say how long it is is read to its end") {
   CHECK(read_all(take, 1000).size() == 24000);
 }
 
-TEST_CASE("A WAV take that is cut short is used as far as it goes, with a warning") {
+TEST_CASE("A take that is cut short is used as far as it goes, with a warning") {
   const TemporaryFolder folder;
-  for (const int container : {SF_FORMAT_WAV, SF_FORMAT_RF64}) {
+  for (const int container : {SF_FORMAT_WAV, SF_FORMAT_RF64, SF_FORMAT_W64, SF_FORMAT_AIFF}) {
     CAPTURE(container);
     Sound sound = sine(0.5, 440, 1);
     sound.format = container | SF_FORMAT_PCM_24;
@@ -167,6 +176,7 @@ TEST_CASE("A WAV take that is cut short is used as far as it goes, with a warnin
     SoundFileTake take(folder / "cut.wav");
     CHECK_THAT(take.warning(), ContainsSubstring("cut short") && ContainsSubstring("30000 bytes"));
     CHECK(read_all(take, 1000).size() == 38000);
+    CHECK(SoundFileTake(folder / "take.wav").warning().empty());
   }
   // A header without a length, as a program writes it that streams.
   write_sound(folder / "take.wav", sine(0.5, 440, 1));
@@ -253,7 +263,7 @@ TEST_CASE("Several channels are written side by side and their peak is that of t
   const double* channels[] = {left.data(), middle.data(), right.data()};
   for (const Depth depth : {Depth::pcm16, Depth::pcm24, Depth::float32}) {
     const auto path = folder / ("clip-" + std::to_string(static_cast<int>(depth)) + ".wav");
-    ClipWriter writer(path, "clip.wav", {96000, 3, 3}, depth);
+    ClipWriter writer(path, "clip.wav", {96000, 3, 3}, {FileKind::wav, depth});
     writer.write(channels, 3, 1);
     writer.close();
     const Sound sound = read_sound(path);
@@ -270,7 +280,7 @@ TEST_CASE("Several channels are written side by side and their peak is that of t
 
 TEST_CASE("A clip of unknown length ends as plain RIFF when it is short") {
   const TemporaryFolder folder;
-  ClipWriter writer(folder / "clip.wav", "clip.wav", {48000, 1, 0}, Depth::pcm24);
+  ClipWriter writer(folder / "clip.wav", "clip.wav", {48000, 1, 0}, ClipFormat{});
   const std::vector<double> samples(5000, 0.25);
   const double* channel = samples.data();
   writer.write(&channel, 5000, 1);
@@ -285,7 +295,7 @@ TEST_CASE("A clip that may pass 4 GiB has room for long sizes in its header, a s
   const std::vector<double> samples(10, 0.25);
   const double* channel = samples.data();
   const auto header_of = [&](const std::string& name, std::int64_t frames) {
-    ClipWriter writer(folder / name, "clip.wav", {48000, 1, frames}, Depth::pcm24);
+    ClipWriter writer(folder / name, "clip.wav", {48000, 1, frames}, ClipFormat{});
     writer.write(&channel, 10, 1);
     writer.close();
     return read_text(folder / name);
@@ -301,7 +311,7 @@ TEST_CASE("Samples that are not finite are never written") {
     for (const double bad : {std::nan(""), std::numeric_limits<double>::infinity(), 1e300}) {
       if (bad == 1e300 && depth != Depth::float32) continue;  // clipped there, too large for a float here
       CAPTURE(number, bad);
-      ClipWriter writer(folder / std::to_string(++number), "clip.wav", {48000, 2, 100}, depth);
+      ClipWriter writer(folder / std::to_string(++number), "clip.wav", {48000, 2, 100}, {FileKind::wav, depth});
       std::vector<double> left(100, 0.1);
       std::vector<double> right(100, 0.1);
       const double* channels[] = {left.data(), right.data()};
@@ -317,7 +327,7 @@ TEST_CASE("A clip is not written over a file, nor where the system says no") {
   const TemporaryFolder folder;
   write_text(folder / "mine.wav", "mine");
   const auto refusal_at = [&](const std::filesystem::path& path) {
-    return message_of<CannotError>([&] { ClipWriter(path, "clip.wav", {48000, 1, 1}, Depth::pcm24); });
+    return message_of<CannotError>([&] { ClipWriter(path, "clip.wav", {48000, 1, 1}, ClipFormat{}); });
   };
   CHECK_THAT(refusal_at(folder / "mine.wav"), ContainsSubstring("File exists"));
   CHECK(read_text(folder / "mine.wav") == "mine");
@@ -339,10 +349,26 @@ TEST_CASE("A disk that takes no more ends a clip with the system's reason") {
   CHECK_THAT(text, ContainsSubstring("clip.wav") && ContainsSubstring("File too large"));
 }
 
-TEST_CASE("Depths are named 16, 24 and float") {
-  CHECK(unsoldered::parse_depth("16", "--depth") == Depth::pcm16);
-  CHECK(unsoldered::parse_depth("24", "--depth") == Depth::pcm24);
-  CHECK(unsoldered::parse_depth("float", "--depth") == Depth::float32);
-  CHECK_THAT(message_of<InputError>([] { unsoldered::parse_depth("32", "--depth"); }),
-             ContainsSubstring("--depth") && ContainsSubstring("16, 24 or float"));
+TEST_CASE("Files that promise more sound than there is in the world are read without believing it") {
+  const TemporaryFolder folder;
+  const std::vector<std::pair<int, std::string>> cases = {
+      {SF_FORMAT_WAV, std::string("\xff\xff\xff\x7f", 4)},
+      {SF_FORMAT_AIFF, std::string("\x7f\xff\xff\xf0", 4)},
+      {SF_FORMAT_W64, std::string("\xff\xff\xff\xff\xff\xff\xff\x7f", 8)},
+  };
+  for (const auto& [container, size] : cases) {
+    CAPTURE(container);
+    Sound sound = sine(0.5, 440, 1);
+    sound.format = container | SF_FORMAT_PCM_24;
+    write_sound(folder / "take", sound);
+    std::string bytes = read_text(folder / "take");
+    const std::size_t name = container == SF_FORMAT_AIFF ? bytes.find("SSND") : bytes.find("data");
+    REQUIRE(name != std::string::npos);
+    bytes.replace(name + (container == SF_FORMAT_W64 ? 16 : 4), size.size(), size);
+    write_text(folder / "take", bytes);
+    SoundFileTake take(folder / "take");
+    CHECK_THAT(take.warning(), ContainsSubstring("cut short"));
+    CHECK(take.format().frames <= 48000);
+    CHECK(read_all(take, 1000).size() == 48000);
+  }
 }
