@@ -4,7 +4,7 @@
 // (from memory). Two blocks in a row of a channel go through one complex transform.
 //
 // Not for live use as it is: the answer comes latency_frames() late, thousands of frames, and the work comes in lumps of
-// that size. process() itself neither allocates, locks nor calls the system.
+// that size.
 #pragma once
 
 #include <memory>
@@ -27,8 +27,8 @@ class ConvolutionPlan {
   friend class Convolver;
 
   int before_;
-  int hop_;  // frames that one transform brings forward
-  Fourier fourier_;
+  int hop_;                      // frames that one transform brings forward
+  int size_;                     // of the transforms
   std::vector<Spectrum> parts_;  // of hop_ taps each when there are several
 };
 
@@ -42,24 +42,24 @@ class Convolver {
   /// zero, to the `before` frames that come next.
   int latency_frames() const noexcept;
 
-  /// Any block size; out may be in. Audio thread, see above.
-  void process(const double* in, double* out, int frames) noexcept;
+  /// Any block size; out may be in. Neither allocates, locks nor calls the system.
+  void process(const double* in, double* out, int frames);
 
   /// Back to silence.
   void reset() noexcept;
 
  private:
-  void transform() noexcept;
-  void load(Spectrum& spectrum) noexcept;
+  void transform();
+  void load(Spectrum& spectrum);
 
   std::shared_ptr<const ConvolutionPlan> plan_;
+  Fourier fourier_;
   std::vector<double> input_;   // size frames that came before, then the two hops that are being filled
   std::vector<double> output_;  // two hops
   int filled_ = 0;              // of the two hops
   std::vector<Spectrum> past_;  // a ring, as many as parts; three for two of them
   std::size_t newest_ = 0;
   Spectrum sum_;
-  Spectrum work_;
 };
 
 }  // namespace unsoldered

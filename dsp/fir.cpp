@@ -28,8 +28,7 @@ struct Period {
 };
 
 Period period_of(const Response& response, double rate_hz, int size) {
-  Spectrum values(size);
-  Spectrum work(size);
+  Spectrum values(static_cast<std::size_t>(size));
   Period period;
   double most = 0;
   for (int k = 0; k <= size / 2; ++k) {
@@ -38,16 +37,15 @@ Period period_of(const Response& response, double rate_hz, int size) {
     const auto here = static_cast<std::size_t>(k);
     const auto mirrored = static_cast<std::size_t>((size - k) % size);
     const bool real = here == mirrored || k == size / 2;
-    values.re[here] = values.re[mirrored] = value.real() / size;
-    values.im[here] = real ? 0 : value.imag() / size;
-    values.im[mirrored] = real ? 0 : -value.imag() / size;
+    values[here] = (real ? value.real() : value) / static_cast<double>(size);
+    values[mirrored] = std::conj(values[here]);
     if (hz >= kLowest && hz <= pass_band_hz(rate_hz)) {
       period.least = std::min(period.least, std::abs(value));
       most = std::max(most, std::abs(value));
     }
   }
-  Fourier(size).backward(values, work);
-  period.taps = std::move(values.re);
+  Fourier(size).backward(values);
+  for (const std::complex<double>& tap : values) period.taps.push_back(tap.real());
   period.least = std::max(period.least, kDeepest * most);
   return period;
 }

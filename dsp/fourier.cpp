@@ -1,40 +1,34 @@
 #include "dsp/fourier.h"
 
-#include <cmath>
-#include <numbers>
+#include <unsupported/Eigen/FFT>
 
 namespace unsoldered {
 
-Fourier::Fourier(int size) : size_(size) {
-  const auto count = static_cast<std::size_t>(size);
-  re_.resize(count);
-  im_.resize(count);
-  for (std::size_t k = 0; k < count; ++k) {
-    const double angle = -2 * std::numbers::pi * static_cast<double>(k) / static_cast<double>(size);
-    re_[k] = std::cos(angle);
-    im_[k] = std::sin(angle);
-  }
-  for (std::size_t steps = 1; steps <= 3; ++steps) {
-    for (const auto* part : {&re_, &im_}) {
-      for (std::size_t p = 0; p < count / 4; ++p) first_.push_back((*part)[steps * p]);
-    }
-  }
+struct Fourier::State {
+  Eigen::FFT<double> transform;
+  Spectrum result;
+};
+
+Fourier::Fourier(int size) : size_(size), state_(std::make_unique<State>()) {
+  state_->transform.SetFlag(Eigen::FFT<double>::Unscaled);
+  state_->result.resize(static_cast<std::size_t>(size));
+  // The first call of each direction makes the plan.
+  Spectrum nothing(static_cast<std::size_t>(size));
+  forward(nothing);
+  backward(nothing);
+}
+Fourier::~Fourier() = default;
+Fourier::Fourier(Fourier&&) noexcept = default;
+Fourier& Fourier::operator=(Fourier&&) noexcept = default;
+
+void Fourier::forward(Spectrum& values) {
+  state_->transform.fwd(state_->result.data(), values.data(), size_);
+  values.swap(state_->result);
 }
 
-FourierTables Fourier::tables() const noexcept { return {size_, re_.data(), im_.data(), first_.data()}; }
-
-void Fourier::forward(Spectrum& values, Spectrum& work) const noexcept {
-  if (fourier(tables(), values.re.data(), values.im.data(), work.re.data(), work.im.data())) {
-    values.re.swap(work.re);
-    values.im.swap(work.im);
-  }
-}
-
-void Fourier::backward(Spectrum& values, Spectrum& work) const noexcept {
-  if (fourier(tables(), values.im.data(), values.re.data(), work.im.data(), work.re.data())) {
-    values.re.swap(work.re);
-    values.im.swap(work.im);
-  }
+void Fourier::backward(Spectrum& values) {
+  state_->transform.inv(state_->result.data(), values.data(), size_);
+  values.swap(state_->result);
 }
 
 }  // namespace unsoldered

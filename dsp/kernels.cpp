@@ -38,18 +38,4 @@ void turn(const TurnInput& input, int frames, double* work, double* state, doubl
   (is_wide ? wide::turn : plain::turn)(input, frames, work, state, out);
 }
 
-bool fourier(const FourierTables& tables, double* re, double* im, double* other_re, double* other_im) noexcept {
-  return (is_wide ? wide::fourier : plain::fourier)(tables, re, im, other_re, other_im);
-}
-
-void between_hops(const double* older_re, const double* older_im, const double* newer_re, const double* newer_im,
-                  int size, double* re, double* im) noexcept {
-  (is_wide ? wide::between_hops : plain::between_hops)(older_re, older_im, newer_re, newer_im, size, re, im);
-}
-
-void multiply_add(const double* a_re, const double* a_im, const double* b_re, const double* b_im, int count, double* re,
-                  double* im) noexcept {
-  (is_wide ? wide::multiply_add : plain::multiply_add)(a_re, a_im, b_re, b_im, count, re, im);
-}
-
 }  // namespace unsoldered

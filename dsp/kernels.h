@@ -56,25 +56,4 @@ struct TurnInput {
 };
 void turn(const TurnInput& input, int frames, double* work, double* state, double* out) noexcept;
 
-/// Factors of a Fourier transform of `size` points, made by fourier.h.
-struct FourierTables {
-  int size;          // a power of two, at least 16
-  const double* re;  // exp(-2 pi i k / size), k < 3/4 size
-  const double* im;
-  const double* first;  // those of the first stage side by side: factors of one, two and three steps, each re then im
-};
-
-/// Discrete Fourier transform in natural order, unscaled: Stockham's form in radix 4 (Van Loan, Computational Frameworks
-/// for the Fast Fourier Transform, from memory). True: the result is in other_re and other_im, false: in re and im;
-/// what the two others then hold is of no use. Exchanging re and im everywhere gives the inverse.
-bool fourier(const FourierTables& tables, double* re, double* im, double* other_re, double* other_im) noexcept;
-
-/// Of spectra A + iB (older) and C + iD (newer) of real signals A to D: B + iC. re and im are apart from the others.
-void between_hops(const double* older_re, const double* older_im, const double* newer_re, const double* newer_im,
-                  int size, double* re, double* im) noexcept;
-
-/// Adds the products of complex numbers; `count` a multiple of four.
-void multiply_add(const double* a_re, const double* a_im, const double* b_re, const double* b_im, int count, double* re,
-                  double* im) noexcept;
-
 }  // namespace unsoldered

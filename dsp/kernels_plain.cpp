@@ -2,6 +2,4 @@
 
 namespace unsoldered::plain {
 #include "dsp/kernels_body.inc"
-// What follows uses the vector type of the above.
-#include "dsp/fourier_body.inc"
 }  // namespace unsoldered::plain

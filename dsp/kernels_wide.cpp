@@ -3,6 +3,4 @@
 
 namespace unsoldered::wide {
 #include "dsp/kernels_body.inc"
-// What follows uses the vector type of the above.
-#include "dsp/fourier_body.inc"
 }  // namespace unsoldered::wide
