@@ -9,6 +9,7 @@
 #include "dsp/exact_step.h"
 #include "dsp/history.h"
 #include "dsp/interpolator.h"
+#include "dsp/kernels.h"
 
 namespace unsoldered {
 namespace {
@@ -19,12 +20,25 @@ constexpr std::array kFastParts = {0.25, 0.25, 0.125, 0.125, 0.125, 0.125};
 constexpr std::array kSlowParts = {0.5, 0.5};
 constexpr double kSlow = 2e-5;  // of the whole dial, a sample
 
+// Steps are computed where some pot has moved on by a row of what would be its step table, and mixed between; as there, the
+// mean of contractions is one. Between the two the pots have to move evenly.
+constexpr double kRows = 3071;
+constexpr double kUneven = 0.02;  // rows
+constexpr int kLongest = 64;      // samples
+
 struct WholeStep {
   Eigen::MatrixXd transition;
   Drive<double> drive;  // Chebyshev moments of the sample's interval
   Eigen::RowVectorXd output;
   double direct = 0;
 };
+
+void mix(const WholeStep& from, const WholeStep& to, double share, WholeStep& step) {
+  step.transition = (1 - share) * from.transition + share * to.transition;
+  step.drive = (1 - share) * from.drive + share * to.drive;
+  step.output = (1 - share) * from.output + share * to.output;
+  step.direct = (1 - share) * from.direct + share * to.direct;
+}
 
 }  // namespace
 
@@ -42,7 +56,10 @@ struct SeveralKnobsFilter::State {
   Dials at;
   bool at_rest = true;
   bool standing = false;  // `step` is that of knobs standing at `at`
-  WholeStep step;
+  WholeStep step;         // of the sample computed last
+  WholeStep before;       // of the one computed before that
+  WholeStep mixed;
+  std::vector<std::vector<double>> rows;  // by pot: of the two samples before a block, then of the block
 
   static std::vector<PotPlace> places(const Circuit& circuit, const std::vector<Knob>& knobs) {
     std::vector<PotPlace> all;
@@ -63,6 +80,7 @@ struct SeveralKnobsFilter::State {
     history.assign(count, History(interpolator.taps(), block));
     states.assign(count, Eigen::VectorXd::Zero(family.states()));
     moments.assign(count, std::vector<double>(static_cast<std::size_t>(Interpolator::moments) * block));
+    rows.assign(pots.size(), std::vector<double>(2 + block, -1));
   }
 
   std::vector<PotPosition> positions(const Dials& dials) const {
@@ -123,29 +141,80 @@ struct SeveralKnobsFilter::State {
     standing = false;
   }
 
+  void follow(int frames, const double* const* dials, int offset) {
+    for (std::size_t i = 0; i < pots.size(); ++i) {
+      const auto& [pot, knob] = pots[i];
+      std::vector<double>& row = rows[i];
+      const auto row_at = [&](double dial) {
+        const double fraction = std::clamp(fraction_below(pot, dial), 0.0, 1.0);
+        double found = 0;
+        table_rows(&fraction, 1, kRows, &found);
+        return is_open(pot, dial) ? found + 10 : found;  // a jump, never mixed with what is connected
+      };
+      if (at_rest) row[0] = row[1] = row_at(dials[knob][offset]);
+      for (int n = 0; n < frames; ++n) row[static_cast<std::size_t>(n) + 2] = row_at(dials[knob][offset + n]);
+    }
+  }
+
+  /// How many samples from sample `first` on (which is `first + 2` in `rows`) move evenly with the one before them.
+  int even_samples(int first, int left) const {
+    for (int length = std::min(left, kLongest); length > 1; length /= 2) {
+      bool even = true;
+      for (const std::vector<double>& row : rows) {
+        const double* from = row.data() + first + 1;
+        const double slope = (from[length] - from[0]) / length;
+        even = even && std::abs(from[length] - from[0]) <= 1;
+        for (int n = -1; even && n < length; ++n) even = std::abs(from[0] + n * slope - from[n]) <= kUneven;
+      }
+      if (even) return length;
+    }
+    return 1;
+  }
+
   void process(const double* const* in, double* const* out, int frames, const double* const* dials, int offset) {
-    const int latency = interpolator.latency();
     for (std::size_t channel = 0; channel < history.size(); ++channel) {
       history[channel].push(in[channel] + offset, frames);
       interpolator.process(history[channel].newest(), frames, moments[channel].data(), block);
     }
-    Dials now(at.size());
-    Eigen::Matrix<double, Interpolator::moments, 1> moment;
-    for (int n = 0; n < frames; ++n) {
+    follow(frames, dials, offset);
+    const auto dials_at = [&](int n) {
+      Dials now(at.size());
       for (std::size_t k = 0; k < now.size(); ++k) now[k] = dials[k][offset + n];
-      if (at_rest) at = now;
+      return now;
+    };
+    for (int n = 0; n < frames;) {
+      const int length = at_rest ? 1 : even_samples(n, frames - n);
+      if (at_rest) at = dials_at(0);
       at_rest = false;
-      advance(now);
-      for (std::size_t channel = 0; channel < history.size(); ++channel) {
-        for (int p = 0; p < Interpolator::moments; ++p)
-          moment(p) = moments[channel][static_cast<std::size_t>(p * block + n)];
-        Eigen::VectorXd& state = states[channel];
-        state = (step.transition * state + step.drive * moment).eval();
-        const double direct = step.direct * history[channel].newest()[n - latency];
-        out[channel][offset + n] = (state.size() == 0 ? 0.0 : step.output.dot(state)) + direct;
+      const bool stood = standing;
+      before = step;
+      if (length > 1) at = dials_at(n + length - 2);
+      advance(dials_at(n + length - 1));
+      for (int i = 1; i < length; ++i) {
+        if (stood && standing) {
+          play(step, n + i - 1, out, offset);
+          continue;
+        }
+        mix(before, step, static_cast<double>(i) / length, mixed);
+        play(mixed, n + i - 1, out, offset);
       }
+      play(step, n + length - 1, out, offset);
+      n += length;
     }
+    for (std::vector<double>& row : rows) std::copy_n(row.begin() + frames, 2, row.begin());
     for (History& past : history) past.keep(frames);
+  }
+
+  void play(const WholeStep& now, int n, double* const* out, int offset) {
+    Eigen::Matrix<double, Interpolator::moments, 1> moment;
+    for (std::size_t channel = 0; channel < history.size(); ++channel) {
+      for (int p = 0; p < Interpolator::moments; ++p)
+        moment(p) = moments[channel][static_cast<std::size_t>(p * block + n)];
+      Eigen::VectorXd& state = states[channel];
+      state = (now.transition * state + now.drive * moment).eval();
+      const double direct = now.direct * history[channel].newest()[n - interpolator.latency()];
+      out[channel][offset + n] = (state.size() == 0 ? 0.0 : now.output.dot(state)) + direct;
+    }
   }
 };
 

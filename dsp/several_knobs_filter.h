@@ -1,7 +1,8 @@
-// The sound of a hookup while several of its knobs turn at once: exact steps computed for each sample, no table.
+// The sound of a hookup while several of its knobs turn at once: exact steps computed as the knobs go, no table.
 //
-// Not for the audio callback: it allocates, and a second of sound takes about a second or two of one core. Same accuracy,
-// latency and stability as MovingPotFilter, which is the one for a single knob.
+// Not for the audio callback: it allocates, and while the knobs turn fast a second of sound takes seconds of one core. Same
+// latency and stability as MovingPotFilter, which is the one for a single knob; within -60 dB, mostly -80, in a full turn
+// of both in 50 ms.
 #pragma once
 
 #include <memory>
