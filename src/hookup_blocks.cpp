@@ -26,11 +26,6 @@ constexpr NumberRange kDial{0, 10, ""};
 constexpr NumberRange kGain{-120, 120, "dB"};
 constexpr double kMetresPerFoot = 0.3048;
 
-std::vector<std::string_view> with(std::vector<std::string_view> keys, const std::vector<std::string_view>& more) {
-  keys.insert(keys.end(), more.begin(), more.end());
-  return keys;
-}
-
 /// A resistance that may be written as "none".
 std::optional<double> shunt_or_none(const TomlBlock& block, std::string_view key) {
   const toml::node* value = block.find(key);

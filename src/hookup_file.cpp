@@ -24,11 +24,6 @@ constexpr Range kFrequency{0.1, 1e6};
 constexpr NumberRange kDial{0, 10, ""};
 constexpr NumberRange kChannel{1, 8, ""};
 
-std::vector<std::string_view> with(std::vector<std::string_view> keys, const std::vector<std::string_view>& more) {
-  keys.insert(keys.end(), more.begin(), more.end());
-  return keys;
-}
-
 std::vector<std::string> read_nodes(const TomlBlock& block) {
   constexpr std::string_view wanted = "a list of node names, as in between = [\"wiper\", \"ground\"]";
   const toml::node* value = block.find("between");

@@ -55,6 +55,11 @@ std::optional<double> plain_number(const toml::node& value) {
 
 }  // namespace
 
+std::vector<std::string_view> with(std::vector<std::string_view> keys, const std::vector<std::string_view>& more) {
+  keys.insert(keys.end(), more.begin(), more.end());
+  return keys;
+}
+
 std::string quoted_list(const std::vector<std::string_view>& names) {
   std::string out;
   for (std::string_view name : names) {

@@ -72,6 +72,9 @@ class TomlBlock {
   std::string path_;
 };
 
+/// Keys of one list and of another.
+std::vector<std::string_view> with(std::vector<std::string_view> keys, const std::vector<std::string_view>& more);
+
 /// "a, b, c" with each name in double quotes.
 std::string quoted_list(const std::vector<std::string_view>& names);
 
