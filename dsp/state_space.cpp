@@ -54,6 +54,12 @@ LongMatrix complement(const LongMatrix& span) {
   return q.rightCols(size - qr.rank());
 }
 
+/// root^-T right; where there is nothing to solve Eigen would bind to nothing.
+LongMatrix solve_upper(const LongMatrix& root, const LongMatrix& right) {
+  if (right.size() == 0) return right;
+  return root.transpose().triangularView<Eigen::Upper>().solve(right);
+}
+
 }  // namespace
 
 /// One network of the chain.
@@ -158,7 +164,7 @@ StateSpaceFamily::Stage::Stage(const Network& network, const std::vector<std::si
   // Charges that no resistor or inductor can change stay at zero.
   const LongMatrix sealed = floating_groups(unknowns, joined_by_rl);
   const LongMatrix moving_charges = complement(root.transpose() * with_capacitor.transpose() * sealed);
-  charge_to_nodes = with_capacitor * root.transpose().triangularView<Eigen::Upper>().solve(moving_charges);
+  charge_to_nodes = with_capacitor * solve_upper(root, moving_charges);
   input_to_nodes = -with_capacitor * charge_root.solve(with_capacitor.transpose() * capacitance_to_emf);
   charges = moving_charges.cols();
 
@@ -181,8 +187,7 @@ StateSpaceFamily::Stage::Stage(const Network& network, const std::vector<std::si
   drives << leaving, inductor_emf.transpose();
   const LongMatrix loops = complement(drives.transpose());
   const LongMatrix moving_fluxes = complement(flux_lower.transpose() * currents.transpose() * loops);
-  const LongMatrix flux_to_current =
-      currents * flux_lower.transpose().triangularView<Eigen::Upper>().solve(moving_fluxes);
+  const LongMatrix flux_to_current = currents * solve_upper(flux_lower, moving_fluxes);
   current_to_nodes = leaving * flux_to_current;
   input_to_flux = flux_to_current.transpose() * inductor_emf;
   fluxes = moving_fluxes.cols();

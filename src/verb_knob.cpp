@@ -1,6 +1,7 @@
 // unsoldered knob HOOKUP [--steps 41]
 #include <algorithm>
 #include <cstddef>
+#include <iostream>
 #include <memory>
 #include <optional>
 #include <string>
@@ -51,6 +52,9 @@ void run(const KnobOptions& options) {
     table.rows.push_back({row.dial, row.degrees, row.element_fraction, row.level_db, cell(row.treble_lost_db),
                           cell(row.treble_5k_1k_db), cell(row.corner_hz), cell(row.peak_hz), cell(row.peak_db),
                           row.output_ohm, row.noise_uv});
+  if (hookup.second && hookup.selector.use == SelectorUse::second)
+    std::cerr << "unsoldered knob: this hookup uses the second source alone, so the volume knob of the first changes "
+                 "nothing; --set second.volume.dial=7 turns the other\n";
   print_table(table, options.hookup.json);
 }
 

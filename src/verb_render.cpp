@@ -112,7 +112,14 @@ void run(const RenderOptions& options) {
     request.recorded_through =
         parse_recorded_through(*options.recorded_through, request.hookups.front().hookup, "--recorded-through");
   }
-  if (options.boost_limit) request.boost_limit_db = parse_boost_limit(*options.boost_limit, "--boost-limit");
+  if (options.boost_limit) {
+    request.boost_limit_db = parse_boost_limit(*options.boost_limit, "--boost-limit");
+    if (!request.recorded_through)
+      throw InputError(
+          "--boost-limit " + *options.boost_limit +
+          ": nothing is taken out of the take, so nothing is boosted; say what it was recorded through with "
+          "--recorded-through, or leave the limit out");
+  }
   if (options.heard_through) request.heard_through = *options.heard_through;
 
   RenderResult result;

@@ -326,6 +326,7 @@ def call_cases():
         ("turn without the knob's name", render("--turn", "=0:1"), ("--turn", '"=0:1"', "tone=0:10,4:0")),
         ("turn and dial", render("--turn", "0:1", "--dial", "5"), ("--dial and --turn", "one of the two")),
         ("two turns of one knob", render("--turn", "0:1", "--turn", "0:2"), ("--turn", "volume", "in one")),
+        ("a boost limit with nothing to undo", render("--boost-limit", "12"), ("--boost-limit 12", "--recorded-through")),
         ("depth 20", render("--depth", "20"), ("--depth", '"20"', "16, 24 or float")),
         ("depth 32", render("--depth", "32"), ("--depth", '"32"', "16, 24 or float")),
         ("jobs 0", render("--jobs", "0"), ("--jobs", "0", "1 to 256")),
