@@ -353,9 +353,17 @@ Knob parse_knob(const Hookup& hookup, const std::string& name) {
     if (known.name == name || (name == "pedal" && known.knob.kind == KnobKind::stage_volume)) return known.knob;
   }
   std::string list;
-  for (const NamedKnob& known : knobs) list += (list.empty() ? "" : ", ") + known.name;
+  bool pedal = false;
+  for (const NamedKnob& known : knobs) {
+    list += (list.empty() ? "" : ", ") + known.name;
+    if (known.knob.kind == KnobKind::stage_volume && !pedal) list += " (or pedal)";
+    pedal = pedal || known.knob.kind == KnobKind::stage_volume;
+  }
   throw InputError("knob \"" + name + "\": this hookup has " + (knobs.size() == 1 ? "one knob, " : "the knobs ") +
-                   list + (name == "tone" ? "; add a [tone] block to have a tone knob" : ""));
+                   list +
+                   (name == "tone"    ? "; add a [tone] block to have a tone knob"
+                    : name == "pedal" ? "; a pedal is a volume in a [[then]] stage"
+                                      : ""));
 }
 
 void set_dial(Hookup& hookup, const Knob& knob, double dial) {

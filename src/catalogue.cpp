@@ -196,9 +196,32 @@ std::string_view nearest_in_catalogue(std::string_view kind, std::string_view na
   return best;
 }
 
+namespace {
+
+/// `tone=none`, `second.tone=none`: the block goes, so that a call can compare with and without it.
+bool take_block_out(TomlDocument& document, const std::string& setting) {
+  constexpr std::string_view none = "=none";
+  if (!setting.ends_with(none)) return false;
+  std::string_view key(setting);
+  key.remove_suffix(none.size());
+  toml::table* parent = &document.root;
+  if (key.starts_with("second.") && document.root["second"].is_table()) {
+    parent = document.root["second"].as_table();
+    key.remove_prefix(std::string_view("second.").size());
+  }
+  constexpr std::string_view blocks[] = {"treble_bleed", "tone",  "cable", "second",
+                                         "selector",     "blend", "then",  "extra"};
+  if (std::find(std::begin(blocks), std::end(blocks), key) == std::end(blocks)) return false;
+  parent->erase(key);
+  return true;
+}
+
+}  // namespace
+
 void apply_settings_and_catalogue(TomlDocument& document, const std::vector<std::string>& settings) {
   name_entries(document);
   for (const std::string& setting : settings) {
+    if (take_block_out(document, setting)) continue;
     apply_setting(document, setting);
     name_entries(document);
   }

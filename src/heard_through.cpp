@@ -4,6 +4,8 @@
 #include <cmath>
 #include <utility>
 
+#include <filesystem>
+
 #include "dsp/error.h"
 #include "dsp/loudspeaker.h"
 #include "src/number_text.h"
@@ -58,6 +60,12 @@ std::optional<HeardThrough> open_heard_through(const std::string& text, const Ta
     throw InputError(where +
                      ": \"\" names nothing; give nothing, guitar-loudspeaker, or an impulse response as a WAV or "
                      "FLAC file");
+  }
+  if (std::error_code error; !std::filesystem::exists(text, error)) {
+    throw InputError(
+        where + ": \"" + text +
+        "\" is neither a file that is there nor a known word; accepted are nothing, guitar-loudspeaker, and an "
+        "impulse response as a WAV, FLAC, AIFF or W64 file");
   }
   SoundFileTake file(text, "impulse response");
   const std::string file_where = "impulse response '" + text + "': ";

@@ -162,7 +162,13 @@ void add_measured(const toml::node& node, const std::filesystem::path& folder,
 
 TomlDocument parse_with_settings(const std::string& toml, const std::string& name,
                                  const std::vector<std::string>& settings) {
+  for (const std::string_view sound : {"RIFF", "RF64", "fLaC", "FORM", "OggS", "ID3", "riff"})
+    if (toml.starts_with(sound))
+      throw InputError(name + ": is a sound file; a hookup file is text, such as those in assets/demo");
   TomlDocument document = parse_toml(toml, name);
+  if (document.root.contains("unsoldered_job"))
+    throw InputError(name +
+                     ": is a job file; render --job plays it, and its hookups have files of their own or stand in it");
   apply_settings_and_catalogue(document, settings);
   return document;
 }

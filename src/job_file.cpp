@@ -25,6 +25,7 @@ constexpr NumberRange kSeconds{0, 1e6, "s"};
 constexpr NumberRange kChannel{1, 8, ""};
 constexpr std::size_t kMostSheetDials = 11;
 constexpr std::string_view kLoudspeaker = "guitar loudspeaker";
+constexpr std::string_view kLoudspeakerAsInCalls = "guitar-loudspeaker";
 
 /// A path that stays in the job's folder; `elsewhere` is the next step for one that does not.
 std::string file_in_folder(const TomlBlock& block, std::string_view key, std::string_view wanted,
@@ -95,7 +96,7 @@ JobHeardThrough read_heard_through(const TomlBlock& take, const fs::path& folder
   if (value == nullptr) return heard;
   if (value->is_string()) {
     const std::string word = take.text(key, "");
-    if (word == kLoudspeaker) {
+    if (word == kLoudspeaker || word == kLoudspeakerAsInCalls) {
       heard.kind = HeardThroughKind::loudspeaker;
     } else if (word != "nothing") {
       take.refuse(key, in_quotes(word) +

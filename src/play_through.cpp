@@ -89,19 +89,17 @@ class Channels {
                        std::to_string(format.channels) + (format.channels == 1 ? " channel" : " channels") +
                        "; give one of its channels, or take second_channel out");
     if (hookup.second_channel) second_ = static_cast<std::size_t>(*hookup.second_channel) - 1;
-    const bool alone = second_ && channels_ == 1;  // nothing drives the first source
     const bool gangs = has_right_gang(hookup);
     for (int gang = 0; gang < (gangs ? 2 : 1); ++gang) {
       std::vector<std::size_t> own;
       for (std::size_t channel = 0; channel < channels_; ++channel)
-        if ((!gangs || static_cast<int>(channel % 2) == gang) && (alone || channel != second_)) own.push_back(channel);
+        if ((!gangs || static_cast<int>(channel % 2) == gang) && (channels_ == 1 || channel != second_))
+          own.push_back(channel);
       if (own.empty()) continue;
       const Hookup half = gang == 0 ? hookup : right_half(hookup);
-      if (!alone) {
-        std::vector<std::vector<std::size_t>> each;
-        for (const std::size_t channel : own) each.push_back({channel});
-        add(half, second_ ? Driven::first : driven_source(half), motion, format, own, each);
-      }
+      std::vector<std::vector<std::size_t>> each;
+      for (const std::size_t channel : own) each.push_back({channel});
+      add(half, second_ ? Driven::first : driven_source(half), motion, format, own, each);
       if (second_) add(half, Driven::second, motion, format, {*second_}, {own});
     }
   }

@@ -225,15 +225,17 @@ ChannelPlans plan_undoing(const RecordedThrough& recorded, double boost_limit_db
   const bool stereo = has_right_gang(recorded.hookup) || (!positions.empty() && has_right_gang(positions.front()));
   const bool differ = stereo || recorded.second || recorded.hookup.second_channel ||
                       (!positions.empty() && positions.front().second_channel);
+  const bool several = format.channels > 1;  // in a mono take no channel is the second source's alone
   std::vector<Fir> filters;
   std::vector<std::size_t> channels;
   std::map<std::tuple<bool, bool, bool>, std::size_t> known;
   std::vector<std::string> said;
   for (int channel = 0; channel < format.channels; ++channel) {
     Path path;
-    path.second_when_played = !positions.empty() && is_channel(positions.front(), channel);
+    path.second_when_played = several && !positions.empty() && is_channel(positions.front(), channel);
     path.right = stereo && channel % 2 == 1 && !path.second_when_played;  // the second's channel goes through both
-    path.second_when_recorded = recorded.second ? path.second_when_played : is_channel(recorded.hookup, channel);
+    path.second_when_recorded =
+        recorded.second ? path.second_when_played : several && is_channel(recorded.hookup, channel);
     const auto [place, is_new] = known.try_emplace(path.key(), filters.size());
     channels.push_back(place->second);
     if (!is_new) continue;

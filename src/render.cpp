@@ -340,6 +340,14 @@ RenderResult render(const RenderRequest& request, Progress& progress) {
   check_can_hold(request.format.kind, take->format());
   if (const std::string warning = take->warning(); !warning.empty()) result.messages.push_back(warning);
 
+  for (const RenderHookup& hookup : request.hookups) {
+    if (hookup.hookup.second && hookup.hookup.selector.use == SelectorUse::both && !hookup.hookup.second_channel)
+      result.messages.push_back(
+          stem_of(hookup) +
+          ": only the first source sounds, the second one loads it; second_channel = 2 makes channel "
+          "2 of a take the second one's own, and 1 gives a mono take to both");
+  }
+
   std::vector<Clip> clips = plan(request);
   const std::vector<ChannelPlans> undo = undo_recording(clips, request, take->format(), result.messages);
   const auto heard = open_heard_through(request.heard_through, take->format(), "--heard-through");

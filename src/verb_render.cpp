@@ -180,7 +180,8 @@ void add_render_verb(CLI::App& app, VerbAction& action) {
       ->disable_flag_override();
   verb->add_flag("--match-loudness", options->match_loudness,
                  "Brings the hookups at each dial position to one loudness, the highest\n"
-                 "that keeps them all under -1 dBTP")
+                 "that keeps them all under -1 dBTP. To match a 10 with a 7, make them\n"
+                 "candidates of a job, each at its own dial")
       ->disable_flag_override();
   verb->add_option("--recorded-through", options->recorded_through,
                    "What the take passed when it was recorded, taken out first: nothing\n"

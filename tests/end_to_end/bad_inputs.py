@@ -138,7 +138,9 @@ def toml_cases():
                file("bad.hookup.toml", HOOKUP.replace("110 pF", "0.11 nF # \u00b1").encode("latin-1")))
     yield Case("TOML: UTF-16", ("bad.hookup.toml:1", "not valid TOML", "UTF-8", "right file"), KNOB,
                file("bad.hookup.toml", HOOKUP.encode("utf-16")))
-    yield Case("TOML: a sound file for a hookup", ("take.wav", "not valid TOML"), ["knob", "take.wav"])
+    yield Case("TOML: a sound file for a hookup", ("take.wav", "is a sound file", "text"), ["knob", "take.wav"])
+    yield Case("a job file for a hookup", ("a.job.toml", "is a job file", "render --job"), ["knob", "a.job.toml"],
+               file("a.job.toml", "unsoldered_job = 1\n"))
     yield Case("TOML: brackets nested 5000 deep", ("bad.hookup.toml:1", "not valid TOML"), KNOB,
                file("bad.hookup.toml", "a = " + "[" * 5000))
     yield Case("TOML: a key of 5000 parts", ("bad.hookup.toml:1", "more than 32 dots", "shorten it"), KNOB,
@@ -700,7 +702,7 @@ def listening_cases():
 
     with_nan = tone(100)
     with_nan[50, 0] = np.nan
-    yield heard("missing impulse response", ("impulse response 'ir.wav'", "No such file", "WAV"))
+    yield heard("missing impulse response", ('"ir.wav"', "guitar-loudspeaker", "WAV, FLAC"))
     yield heard("impulse response of another rate", ("44100 Hz", "48000 Hz", "resample"), wav(tone(100), rate=44100))
     yield heard("impulse response of more channels", ("2 channels", "take of 1", "used for all"), wav(tone(100, 2)))
     yield heard("silent impulse response", ("ir.wav", "silent", "every sample is 0"), wav(0 * tone(100)))
