@@ -1,5 +1,6 @@
 #include "dsp/quantity.h"
 
+#include <algorithm>
 #include <array>
 #include <charconv>
 #include <cmath>
@@ -306,6 +307,21 @@ bool carries_law_letter(std::string_view text) {
 }
 
 /// Why `text`, which is no quantity of this unit, is refused.
+/// What a marking of three figures on a capacitor means, " (the marking 223 …)"; empty for anything else. Two figures and a
+/// power of ten, in picofarad; a letter after it is the tolerance (IEC 60062).
+std::string marking_hint(std::string_view text, Unit unit) {
+  const std::string_view code = trim(text);
+  const bool letter = code.size() == 4 && code[3] >= 'A' && code[3] <= 'Z';
+  if (unit != Unit::farad || (code.size() != 3 && !letter) || !std::all_of(code.begin(), code.begin() + 3, is_digit))
+    return {};
+  const int power = code[2] == '8' ? -2 : code[2] == '9' ? -1 : code[2] - '0';
+  double farad = 0;  // read as text, so that 22e-9 is the number nearest to it
+  const std::string figures = std::string(code.substr(0, 2)) + "e" + std::to_string(power - 12);
+  std::from_chars(figures.data(), figures.data() + figures.size(), farad);
+  if (farad == 0) return {};
+  return "; as a marking on a capacitor it is " + format_quantity(farad, Unit::farad) + ": write that";
+}
+
 [[noreturn]] void explain(std::string_view whole_text, std::string_view text, std::size_t number, Unit unit) {
   if (text.find(',') != std::string_view::npos) {
     std::string with_point(text);
@@ -329,10 +345,12 @@ bool carries_law_letter(std::string_view text) {
   }
   for (const Prefix& prefix : kPrefixes) {
     if (suffix == prefix.text) {
-      refuse(whole_text, unit, "has the prefix " + std::string(suffix) + ", which is not used here");
+      refuse(whole_text, unit,
+             "has the prefix " + std::string(suffix) + ", which is not used here" + marking_hint(whole_text, unit));
     }
   }
-  refuse(whole_text, unit, "has " + shown(suffix) + " after the number, which means nothing here");
+  refuse(whole_text, unit,
+         "has " + shown(suffix) + " after the number, which means nothing here" + marking_hint(whole_text, unit));
 }
 
 /// `digits` with the decimal point `whole` places in; zeros are added on either side as needed.
@@ -454,9 +472,10 @@ double parse_quantity(std::string_view text, Unit unit) {
 double parse_quantity(std::string_view text, Unit unit, Range range) {
   const double value = parse_quantity(text, unit);
   if (!(value >= range.low && value <= range.high)) {
-    throw InputError(shown(text) + " (" + format_quantity(value, unit) + ") is out of range; accepted is " +
-                     format_quantity(range.low, unit) + " to " + format_quantity(range.high, unit) +
-                     "; check the figure and its prefix");
+    throw InputError(
+        shown(text) + " (" + format_quantity(value, unit) + ") is out of range; accepted is " +
+        format_quantity(range.low, unit) + " to " + format_quantity(range.high, unit) +
+        (marking_hint(text, unit).empty() ? "; check the figure and its prefix" : marking_hint(text, unit)));
   }
   return value;
 }
@@ -464,7 +483,8 @@ double parse_quantity(std::string_view text, Unit unit, Range range) {
 double require_in_range(double value, Unit unit, Range range) {
   if (!(value >= range.low && value <= range.high)) {
     throw InputError(format_quantity(value, unit) + " is out of range; accepted is " +
-                     format_quantity(range.low, unit) + " to " + format_quantity(range.high, unit));
+                     format_quantity(range.low, unit) + " to " + format_quantity(range.high, unit) +
+                     (value >= 100 && value < 1000 ? marking_hint(std::to_string(std::lround(value)), unit) : ""));
   }
   return value;
 }

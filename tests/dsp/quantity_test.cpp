@@ -251,3 +251,21 @@ TEST_CASE("Percentages need their sign") {
     CHECK_THROWS_AS(parse_percent(text), InputError);
   }
 }
+
+TEST_CASE("A capacitor's three-figure marking is not taken for a value; the message says what it means") {
+  // Two figures and a power of ten in picofarad (common practice), 9 and 8 for tenths and hundredths; letters: IEC 60062.
+  const unsoldered::Range range{0.01e-12, 10e-3};
+  const auto refusal = [&](const char* text) {
+    try {
+      parse_quantity(text, Unit::farad, range);
+    } catch (const InputError& error) {
+      return std::string(error.what());
+    }
+    return std::string("accepted");
+  };
+  CHECK_THAT(refusal("223"), ContainsSubstring("22 nF"));
+  CHECK_THAT(refusal("223J"), ContainsSubstring("22 nF"));
+  CHECK_THAT(refusal("104K"), ContainsSubstring("100 nF"));
+  CHECK_THAT(refusal("229"), ContainsSubstring("2.2 pF"));
+  CHECK_THAT(refusal("22"), !ContainsSubstring("marking"));
+}
