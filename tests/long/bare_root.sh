@@ -61,19 +61,27 @@ take_settings() {
   fi
 }
 
-mount_in() {
-  local root=$1
-  mount -t proc proc "$root/proc"
-  mkdir -p "$root/dev/shm"
-  mount -t tmpfs -o mode=1777 shm "$root/dev/shm"
-}
+# In a mount namespace whose root it is, as on a machine of its own: in a mere chroot no user may make a namespace, and
+# tests that do would fail there alone.
+enter='
+root=$1 user=$2 command=$3
+mount --bind "$root" "$root" && cd "$root" && mkdir -p old && pivot_root . old || exit 3
+mount -t proc proc proc
+mkdir -p dev/pts dev/shm
+mount -t devpts -o newinstance,ptmxmode=0666,mode=620 devpts dev/pts
+ln -sf pts/ptmx dev/ptmx
+mount -t tmpfs -o mode=1777 shm dev/shm
+umount --lazy old
+exec chroot . su -w http_proxy,https_proxy,no_proxy,LANG - "$user" -c "$command"
+'
+export enter
 
-# inside ROOT USER COMMAND: as at a fresh login, with nothing of this session's environment but a proxy.
+# inside ROOT USER COMMAND: as at a fresh login, with nothing of the caller's environment but a proxy.
 inside() {
   local root=$1 user=$2 command=$3
   env -i PATH=/usr/local/sbin:/usr/local/bin:/usr/sbin:/usr/bin:/sbin:/bin ${http_proxy:+http_proxy="$http_proxy"} \
     ${https_proxy:+https_proxy="$https_proxy"} ${no_proxy:+no_proxy="$no_proxy"} LANG=C.UTF-8 \
-    chroot "$root" su -w http_proxy,https_proxy,no_proxy,LANG - "$user" -c "$command"
+    unshare --mount --propagation private sh -c "$enter" sh "$root" "$user" "$command"
 }
 without_network() { unshare --net "$@"; }
 export -f inside
@@ -109,7 +117,6 @@ fi
 for who in root maker; do
   root="$folder/$who"
   cp -a "$folder/pristine" "$root"
-  mount_in "$root"
   cp "$folder/origin.bundle" "$root/var/origin.bundle"
   tools=git
   if [ "$who" != root ]; then
