@@ -63,8 +63,6 @@ std::size_t negligible(const Tap& tap, std::size_t count, double most) {
 
 }  // namespace
 
-double pass_band_hz(double rate_hz) noexcept { return std::clamp(20000.0, 0.4167 * rate_hz, 0.4535 * rate_hz); }
-
 double smooth_step(double x) noexcept {
   if (x <= 0) return 0;
   if (x >= 1) return 1;

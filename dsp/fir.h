@@ -5,6 +5,8 @@
 #include <functional>
 #include <vector>
 
+#include "dsp/interpolator.h"
+
 namespace unsoldered {
 
 /// out[n] = sum over k of taps[k] in[n + before - k].
@@ -25,9 +27,6 @@ struct SampledFir {
   bool settled = true;
 };
 SampledFir sample_response(const Response& response, double rate_hz);
-
-/// What the interpolator of the filters carries whole (interpolator.h): 20 kHz, but 0.4167 to 0.4535 of the rate.
-double pass_band_hz(double rate_hz) noexcept;
 
 /// One to pass_band_hz(), smoothly to nothing at half the rate.
 double upper_fade(double hz, double rate_hz) noexcept;

@@ -19,8 +19,7 @@ constexpr double most_pass = 0.4535;   // 20 kHz at 44.1 kHz; below that the pas
 double kaiser_beta() { return 0.1102 * (suppression_db - 8.7); }
 
 int kaiser_taps(double rate_hz) {
-  const double pass = std::clamp(pass_hz / rate_hz, least_pass, most_pass);
-  const double transition = 1 - 2 * pass;
+  const double transition = 1 - 2 * pass_band_hz(rate_hz) / rate_hz;
   const double length = (suppression_db - 7.95) / (2.285 * 2 * std::numbers::pi * transition) + 1;
   return 2 * static_cast<int>(std::ceil(length / 2));
 }
@@ -52,6 +51,8 @@ Eigen::VectorXd weights_at(double tau, int taps) {
 }
 
 }  // namespace
+
+double pass_band_hz(double rate_hz) noexcept { return std::clamp(pass_hz, least_pass * rate_hz, most_pass * rate_hz); }
 
 Interpolator::Interpolator(double rate_hz) : taps_(kaiser_taps(rate_hz)) {
   constexpr int nodes = 32;

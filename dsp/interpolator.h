@@ -19,6 +19,9 @@
 
 namespace unsoldered {
 
+/// Upper edge of what the curve carries whole: 20 kHz, but at least 0.4167 and at most 0.4535 of the rate.
+double pass_band_hz(double rate_hz) noexcept;
+
 class Interpolator {
  public:
   static constexpr int moments = moment_count;

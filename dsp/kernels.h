@@ -42,7 +42,7 @@ void ring(const Modes& modes, const double* input, int frames, double* re, doubl
 void table_rows(const double* fractions, int frames, double last_row, double* rows) noexcept;
 
 /// One channel of a moving-pot filter. rows[n] is the table row (its fraction: share of the next) at the end of sample n,
-/// rows[-1] that at the start of the first; speeds[n] is the knob's speed within it, -1..1 (0: standing).
+/// speeds[n] the knob's speed within it, -1..1 (0: standing).
 /// interval_moments[p * stride + n], direct_input[n]. work: one row.
 /// state[padded] is kept between calls. out[n] = output of the state at the end of sample n.
 struct TurnInput {

@@ -21,6 +21,7 @@ struct MovingPotFilter::State {
   std::vector<double> states;    // channels x padded
   std::vector<double> moments;   // Interpolator::moments x block
   std::vector<double> work;      // for the kernel: a row
+  std::vector<double> lowest;    // dial within the sample, one a frame
   std::vector<double> rows;      // of the knob, one a frame
   std::vector<double> speeds;    // one a frame
   std::vector<double> places;    // along the table, one a frame
@@ -36,6 +37,7 @@ struct MovingPotFilter::State {
     moments.assign(static_cast<std::size_t>(Interpolator::moments) * block, 0);
     work.assign(static_cast<std::size_t>(table.layout().size), 0);
     places.assign(block, 0);
+    lowest.assign(block, 0);
     rows.assign(block, 0);
     speeds.assign(block, 0);
   }
@@ -50,11 +52,12 @@ struct MovingPotFilter::State {
       const auto i = static_cast<std::size_t>(n);
       const double before = place;
       if (dials[n] != dial) place = table.place(dials[n]);
+      lowest[i] = std::min(dial, dials[n]);  // a no-load pot is open in a sample that it has spent at 10
       dial = dials[n];
       places[i] = place;
       speeds[i] = table.speed(before, place);
     }
-    table.rows_at(dials, places.data(), frames, rows.data());
+    table.rows_at(lowest.data(), places.data(), frames, rows.data());
   }
 
   void process(const double* in, double* out, int frames, std::size_t channel) noexcept {

@@ -57,8 +57,11 @@ MergedNodes merge_wires(const Network& network, const std::vector<Branch>& branc
   }
   if (wired.together(network.emf, network.emf_return)) {
     std::string where;
-    for (const PotInNetwork& pot : network.pots)
-      where += (where.empty() ? " with " : ", ") + pot.name + " at dial " + std::to_string(pot.dial).substr(0, 5);
+    for (const PotInNetwork& pot : network.pots) {
+      const double fraction = fraction_below(pot, pot.dial);
+      if (fraction > 0 && fraction < 1) continue;
+      where += (where.empty() ? " with " : ", ") + pot.name + " at an end";
+    }
     throw InputError("the ideal generator is short-circuited" + where +
                      ": nothing limits its current, so the network has no solution; give the source (or the "
                      "buffer's output) a resistance or the pot an end_resistance");

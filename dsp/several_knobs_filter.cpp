@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <utility>
 
 #include "dsp/denormals.h"
 #include "dsp/error.h"
@@ -188,10 +189,14 @@ struct SeveralKnobsFilter::State {
       at_rest = false;
       const bool stood = standing;
       before = step;
-      if (length > 1) at = dials_at(n + length - 2);
+      if (length > 1) {
+        Dials before_last = dials_at(n + length - 2);
+        standing = standing && before_last == at;
+        at = std::move(before_last);
+      }
       advance(dials_at(n + length - 1));
       for (int i = 1; i < length; ++i) {
-        if (stood && standing) {
+        if (stood && standing) {  // nothing has moved
           play(step, n + i - 1, out, offset);
           continue;
         }

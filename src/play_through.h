@@ -11,7 +11,7 @@
 
 namespace unsoldered {
 
-/// A knob that turns; the volume is at 10 unless it is the one.
+/// A knob that turns; every other stays at its own dial.
 struct TurningKnob {
   Knob knob = Knob::volume;
   Turn turn;

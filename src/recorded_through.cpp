@@ -50,16 +50,19 @@ RecordedThrough instrument(const Hookup& first) {
   return recorded;
 }
 
+/// The emf that a channel of the take is: of the source the take drives, of the second, or of both (a mono take).
+enum class Sounding { first, second, both };
+
 /// What one channel of the take goes through: which half of stereo pots, which source.
 struct Path {
   bool right = false;
-  bool second_when_played = false;
-  bool second_when_recorded = false;
-  auto key() const { return std::tie(right, second_when_played, second_when_recorded); }
+  Sounding played = Sounding::first;
+  Sounding recorded = Sounding::first;
+  auto key() const { return std::make_tuple(right, played, recorded); }
 };
 
 /// A network without a solution is refused with the name of its hookup.
-Response response_of(const std::string& name, const Hookup& hookup, bool right, bool second) {
+Response response_of(const std::string& name, const Hookup& hookup, bool right, Sounding sounding) {
   const Hookup half = right ? right_half(hookup) : hookup;
   const auto named = [name](const auto& compute) {
     try {
@@ -68,20 +71,30 @@ Response response_of(const std::string& name, const Hookup& hookup, bool right, 
       throw InputError(name + ": " + error.what());
     }
   };
-  const auto analysis = named([&] {
-    return std::make_shared<CircuitAnalysis>(hookup_circuit(half, second ? Driven::second : driven_source(half)));
-  });
-  return [analysis, named](double hz) { return named([&] { return analysis->value(hz); }); };
+  std::vector<Driven> emfs;
+  if (sounding == Sounding::both)
+    emfs = {Driven::first, Driven::second};
+  else
+    emfs = {sounding == Sounding::second ? Driven::second : driven_source(half)};
+  const auto analyses = std::make_shared<std::vector<CircuitAnalysis>>();
+  for (const Driven driven : emfs) named([&] { return analyses->emplace_back(hookup_circuit(half, driven)), 0; });
+  return [analyses, named](double hz) {
+    std::complex<double> sum = 0;
+    for (CircuitAnalysis& analysis : *analyses) sum += named([&] { return analysis.value(hz); });
+    return sum;
+  };
 }
 
 Response recorded_response(const RecordedThrough& recorded, const Path& path) {
-  if (path.second_when_recorded && recorded.second)
-    return response_of(recorded.name, *recorded.second, path.right, false);
-  return response_of(recorded.name, recorded.hookup, path.right, path.second_when_recorded && !recorded.second);
+  if (path.recorded == Sounding::second && recorded.second)
+    return response_of(recorded.name, *recorded.second, path.right, Sounding::first);
+  return response_of(recorded.name, recorded.hookup, path.right, path.recorded);
 }
 
-bool is_channel(const Hookup& hookup, int channel) {
-  return hookup.second && hookup.second_channel && *hookup.second_channel == channel + 1;
+/// What a channel of a take is to a hookup.
+Sounding sounding(const Hookup& hookup, int channel, int channels) {
+  if (!hookup.second || hookup.second_channel != channel + 1) return Sounding::first;
+  return channels == 1 ? Sounding::both : Sounding::second;
 }
 
 std::string frequency_text(double hz) {
@@ -225,23 +238,25 @@ ChannelPlans plan_undoing(const RecordedThrough& recorded, double boost_limit_db
   const bool stereo = has_right_gang(recorded.hookup) || (!positions.empty() && has_right_gang(positions.front()));
   const bool differ = stereo || recorded.second || recorded.hookup.second_channel ||
                       (!positions.empty() && positions.front().second_channel);
-  const bool several = format.channels > 1;  // in a mono take no channel is the second source's alone
   std::vector<Fir> filters;
   std::vector<std::size_t> channels;
-  std::map<std::tuple<bool, bool, bool>, std::size_t> known;
+  std::map<std::tuple<bool, Sounding, Sounding>, std::size_t> known;
   std::vector<std::string> said;
   for (int channel = 0; channel < format.channels; ++channel) {
     Path path;
-    path.second_when_played = several && !positions.empty() && is_channel(positions.front(), channel);
-    path.right = stereo && channel % 2 == 1 && !path.second_when_played;  // the second's channel goes through both
-    path.second_when_recorded =
-        recorded.second ? path.second_when_played : several && is_channel(recorded.hookup, channel);
+    if (!positions.empty()) path.played = sounding(positions.front(), channel, format.channels);
+    path.right = stereo && channel % 2 == 1 && path.played != Sounding::second;  // the second's goes through both
+    // Both pickups of an instrument, each on a lead of its own, have no one response: a mono take counts as the first's.
+    path.recorded = recorded.second ? (path.played == Sounding::both ? Sounding::first : path.played)
+                                    : sounding(recorded.hookup, channel, format.channels);
     const auto [place, is_new] = known.try_emplace(path.key(), filters.size());
     channels.push_back(place->second);
     if (!is_new) continue;
     std::vector<Response> played;
     for (const Hookup& position : positions) {
-      played.push_back(response_of(played_name, position, path.right, path.second_when_played));
+      played.push_back(response_of(played_name, position, path.right, path.played));
+      if (stereo && path.played == Sounding::second)
+        played.push_back(response_of(played_name, position, true, path.played));
     }
     const auto undo = design_undo_filter(recorded_response(recorded, path), played, boost_limit_db, format.rate_hz);
     if (!undo) {

@@ -323,3 +323,62 @@ TEST_CASE("Several knobs at once: with one moving it is the same as that one alo
   }
   CHECK(10 * std::log10(error / power) < -85);
 }
+
+namespace {
+
+/// Of two sounds, dB.
+double difference_db(const Samples& got, const Samples& due) {
+  double error = 0;
+  double power = 0;
+  for (std::size_t n = 0; n < due.size(); ++n) {
+    error += (got[n] - due[n]) * (got[n] - due[n]);
+    power += due[n] * due[n];
+  }
+  return 10 * std::log10(error / power);
+}
+
+Samples with_one(const Hookup& hookup, const Knob& knob, const Samples& take, const Samples& dials) {
+  MovingPotFilter filter(hookup, knob, 48000, 1);
+  Samples out(take.size());
+  const double* in = take.data();
+  double* to = out.data();
+  filter.process(&in, &to, static_cast<int>(take.size()), dials.data());
+  return out;
+}
+
+/// `other` stays at its dial.
+Samples with_two(const Hookup& hookup, const Knob& knob, const Knob& other, double other_dial, const Samples& take,
+                 const Samples& dials) {
+  SeveralKnobsFilter filter(hookup_circuit(hookup), {other, knob}, 48000, 1);
+  Samples out(take.size());
+  const Samples still(take.size(), other_dial);
+  const double* in = take.data();
+  double* to = out.data();
+  const double* both[] = {still.data(), dials.data()};
+  filter.process(&in, &to, static_cast<int>(take.size()), both);
+  return out;
+}
+
+}  // namespace
+
+TEST_CASE("Many small steps of a knob add up the same with several knobs as with one") {
+  const Hookup hookup = example_hookups()[1].hookup;
+  const Samples take = sines_to_18k(24000, 48000);
+  Samples stairs(take.size());
+  for (std::size_t n = 0; n < stairs.size(); ++n) stairs[n] = 2 + 0.00015 * static_cast<double>(n / 48);
+  const Samples one = with_one(hookup, Knob::volume, take, stairs);
+  CHECK(difference_db(with_two(hookup, Knob::volume, Knob::tone, hookup.tone->dial, take, stairs), one) < -60);
+}
+
+TEST_CASE("A no-load tone that turns to 10 and back is the same computed step by step, within -80 dB") {
+  Hookup hookup = example_hookups()[1].hookup;
+  hookup.tone->no_load = true;
+  const Samples take = sines_to_18k(12000, 48000);
+  Samples dials(take.size());
+  for (std::size_t n = 0; n < dials.size(); ++n) {
+    const auto t = static_cast<double>(n);
+    dials[n] = std::min({9 + t / 4000, 10.0, 10 - (t - 8000) / 2000});  // up to 10, there for 4000 samples, and down
+  }
+  const Samples due = with_two(hookup, Knob::tone, Knob::volume, 10, take, dials);
+  CHECK(difference_db(with_one(hookup, Knob::tone, take, dials), due) < -80);
+}

@@ -113,6 +113,19 @@ class RecordedThroughTest(unittest.TestCase):
         self.assertLess(worst["turning"][0], BOUND_DB)
         self.assertLess(worst["degrees"][0], 0.1)
 
+    def test_a_mono_take_of_two_sources_comes_back_too(self):
+        text = HOOKUPS[next(iter(HOOKUPS))]
+        second = text[text.index("[source]"):text.index("[volume]")].replace("[source]", "[second.source]")
+        for phase in ("in", "out"):
+            more = second + f'[second.volume]\nresistance = "250k"\ntaper = "linear"\ndial = 6\n'
+            both = f'second_channel = 1\n{text}\n{more}[selector]\nphase = "{phase}"\n'
+            file = self.folder.hookup("both", both)
+            sines = Sines(48000, 5)
+            (clip,), _ = self.folder.render(sines.take(), 48000, file, "--dial", 7, "--recorded-through", f"{file}@7")
+            error = error_db(sines.measured(clip), 1.0)
+            print(f"mono take of two sources, phase = {phase}: {error:.4f} dB")
+            self.assertLess(error, BOUND_DB)
+
     def test_recorded_at_10_and_auditioned_elsewhere_is_the_emf_auditioned_there(self):
         worst, turning = (0, ""), (-300, "")
         for number, (name, text) in enumerate(HOOKUPS.items()):
