@@ -146,7 +146,8 @@ void add_render_verb(CLI::App& app, VerbAction& action) {
   verb->add_option("--hookup", options->hookups, "Hookup files; may be repeated")->type_name("FILE");
   verb->add_option("--job", options->job,
                    "A job file in place of hookups: its take (TAKE, when given, stands in for it),\n"
-                   "its candidates, and what the take was recorded and is heard through")
+                   "its candidates, and what the take was recorded and is heard through; its\n"
+                   "loop is for listening, clips hold the whole take")
       ->type_name("FILE");
   verb->add_option("--dial", options->dials,
                    "Volume knob positions 0 to 10, a clip for each (default 10; in a job each\n"
