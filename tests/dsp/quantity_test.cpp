@@ -252,7 +252,7 @@ TEST_CASE("Percentages need their sign") {
   }
 }
 
-TEST_CASE("A capacitor's three-figure marking is not taken for a value; the message says what it means") {
+TEST_CASE("A capacitor's three-figure marking is not taken for a value, and the message says what it means") {
   // Two figures and a power of ten in picofarad (common practice), 9 and 8 for tenths and hundredths; letters: IEC 60062.
   const unsoldered::Range range{0.01e-12, 10e-3};
   const auto refusal = [&](const char* text) {
