@@ -88,9 +88,7 @@ void LoudnessMeter::add(const double* const* channels, int frames) {
     frames_ += part;
     until_block_ -= part;
     if (until_block_ > 0) continue;
-    double lufs = 0;
-    ebur128_loudness_momentary(state_.get(), &lufs);
-    result_.energies_.push_back(energy_of(lufs));
+    result_.energies_.push_back(energy_of(momentary_lufs()));
     until_block_ = step_frames_;
   }
 }
@@ -99,6 +97,18 @@ void LoudnessMeter::add_interleaved(const double* samples, int frames) {
   if (ebur128_add_frames_double(state_.get(), samples, static_cast<std::size_t>(frames)) != EBUR128_SUCCESS) {
     throw std::bad_alloc();
   }
+}
+
+double LoudnessMeter::momentary_lufs() const {
+  double lufs = 0;
+  ebur128_loudness_momentary(state_.get(), &lufs);
+  return lufs;
+}
+
+double LoudnessMeter::short_term_lufs() const {
+  double lufs = 0;
+  ebur128_loudness_shortterm(state_.get(), &lufs);
+  return lufs;
 }
 
 double LoudnessMeter::true_peak() const {
@@ -115,10 +125,8 @@ Loudness LoudnessMeter::finish() {
   if (frames_ < static_cast<std::int64_t>(kShortestGatedSeconds) * rate_hz_) {
     // The window is 3 s whatever came, silence before the clip included: its energy is spread over too much time.
     const auto window = static_cast<std::int64_t>(10 * kShortestGatedSeconds) * step_frames_;
-    double lufs = 0;
-    ebur128_loudness_shortterm(state_.get(), &lufs);
     const double share = static_cast<double>(std::min(frames_, window)) / static_cast<double>(window);
-    result_.energies_ = {frames_ == 0 ? 0 : energy_of(lufs) / share};
+    result_.energies_ = {frames_ == 0 ? 0 : energy_of(short_term_lufs()) / share};
   }
   // The peak after the last sample is seen when the interpolator has moved past it.
   const std::vector<double> silence(static_cast<std::size_t>(kInterpolatorFrames) *

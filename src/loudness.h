@@ -42,6 +42,11 @@ class LoudnessMeter {
   /// Planar frames in order, full scale 1. Allocates.
   void add(const double* const* channels, int frames);
 
+  /// Of the last 0.4 s and the last 3 s (EBU Tech 3341), without gates; -infinity for silence. What came before the first
+  /// frame counts as silence.
+  double momentary_lufs() const;
+  double short_term_lufs() const;
+
   /// So far; the last 12 samples may still raise it.
   double true_peak() const;
 

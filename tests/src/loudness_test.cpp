@@ -136,6 +136,80 @@ TEST_CASE("Pure tones measure as the weighting curve says") {
   }
 }
 
+namespace {
+
+struct Readings {
+  std::vector<double> momentary;  // every 10 ms
+  std::vector<double> short_term;
+
+  double most(const std::vector<double>& readings, double from_s, double to_s) const {
+    const auto at = [&](double seconds) { return readings.begin() + std::lround(100 * seconds); };
+    return *std::max_element(at(from_s), at(to_s));
+  }
+  double least(const std::vector<double>& readings, double from_s, double to_s) const {
+    const auto at = [&](double seconds) { return readings.begin() + std::lround(100 * seconds); };
+    return *std::min_element(at(from_s), at(to_s));
+  }
+};
+
+/// A stereo tone of 1 kHz read as a meter is.
+Readings read_meter(const std::vector<Part>& parts) {
+  const std::vector<double> channel = tone(parts, 1000, 48000);
+  LoudnessMeter meter(48000, 2);
+  Readings readings;
+  for (std::size_t done = 0; done + 480 <= channel.size(); done += 480) {
+    const double* both[] = {channel.data() + done, channel.data() + done};
+    meter.add(both, 480);
+    readings.momentary.push_back(meter.momentary_lufs());
+    readings.short_term.push_back(meter.short_term_lufs());
+  }
+  return readings;
+}
+
+constexpr double kSilent = -300;
+
+}  // namespace
+
+TEST_CASE("EBU Tech 3341, cases 9 and 12: readings that stay where they are") {
+  std::vector<Part> parts;
+  for (int i = 0; i < 5; ++i) parts.insert(parts.end(), {{-20, 1.34}, {-30, 1.66}});
+  const Readings nine = read_meter(parts);
+  CHECK_THAT(nine.most(nine.short_term, 3, 15), WithinAbs(-23, 0.1));
+  CHECK_THAT(nine.least(nine.short_term, 3, 15), WithinAbs(-23, 0.1));
+  parts.clear();
+  for (int i = 0; i < 25; ++i) parts.insert(parts.end(), {{-20, 0.18}, {-30, 0.22}});
+  const Readings twelve = read_meter(parts);
+  CHECK_THAT(twelve.most(twelve.momentary, 1, 10), WithinAbs(-23, 0.1));
+  CHECK_THAT(twelve.least(twelve.momentary, 1, 10), WithinAbs(-23, 0.1));
+}
+
+TEST_CASE("EBU Tech 3341, cases 10 and 13: a burst wherever it begins") {
+  for (int i = 0; i < 20; ++i) {
+    CAPTURE(i);
+    const Readings ten = read_meter({{kSilent, 0.15 * i}, {-23, 3}, {kSilent, 1}});
+    CHECK_THAT(ten.most(ten.short_term, 0, 3 + 0.15 * i), WithinAbs(-23, 0.1));
+    const Readings thirteen = read_meter({{kSilent, 0.02 * i}, {-23, 0.4}, {kSilent, 1}});
+    CHECK_THAT(thirteen.most(thirteen.momentary, 0, 0.4 + 0.02 * i), WithinAbs(-23, 0.1));
+  }
+}
+
+TEST_CASE("EBU Tech 3341, cases 11 and 14: bursts a decibel apart, each read as it is") {
+  std::vector<Part> slow;
+  std::vector<Part> fast;
+  for (int i = 0; i < 20; ++i) {
+    const double level = -38 + i;
+    slow.insert(slow.end(), {{kSilent, 0.15 * i}, {level, 3}, {kSilent, 3 - 0.15 * i}});
+    fast.insert(fast.end(), {{kSilent, 0.02 * i}, {level, 0.4}, {kSilent, 0.4 - 0.02 * i}});
+  }
+  const Readings eleven = read_meter(slow);
+  const Readings fourteen = read_meter(fast);
+  for (int i = 0; i < 20; ++i) {
+    CAPTURE(i);
+    CHECK_THAT(eleven.most(eleven.short_term, 6 * i, 6 * (i + 1)), WithinAbs(-38 + i, 0.1));
+    CHECK_THAT(fourteen.most(fourteen.momentary, 0.8 * i, 0.8 * (i + 1)), WithinAbs(-38 + i, 0.1));
+  }
+}
+
 TEST_CASE("EBU Tech 3341, cases 15 to 19: peaks between the samples") {
   struct Case {
     double divisor, amplitude, phase_deg, required, library;
