@@ -99,21 +99,28 @@ std::vector<double> even_dials(int steps) {
   return dials;
 }
 
-std::vector<KnobRow> knob_table(const Hookup& hookup, const std::vector<double>& dials) {
+std::vector<KnobRow> knob_table(const Hookup& hookup, const std::vector<double>& dials, const Knob& knob) {
   const Listening bands = listening_bands(hookup);
-  CircuitAnalysis open(hookup_circuit(hookup, 10));
+  const auto circuit_at = [&](double dial) {
+    Hookup turned = hookup;
+    set_dial(turned, knob, dial);
+    return hookup_circuit(turned);
+  };
+  CircuitAnalysis open(circuit_at(10));
   const double full_balance_db = treble_balance_db(open, bands);
 
   std::vector<KnobRow> rows;
   rows.reserve(dials.size());
   for (const double dial : dials) {
-    const Circuit circuit = hookup_circuit(hookup, dial);
+    const Circuit circuit = circuit_at(dial);
+    const PotPlace place = pots_of(circuit, knob).front();
+    const PotInNetwork& pot = circuit.stages[place.stage].pots[place.pot];
     CircuitAnalysis analysis(circuit);
     NodalAnalysis looking_back(without_load(circuit));
     KnobRow row;
     row.dial = dial;
-    row.degrees = degrees(hookup.volume.pot, dial);
-    row.element_fraction = element_fraction(hookup.volume.pot, dial);
+    row.degrees = degrees(pot.pot, dial);
+    row.element_fraction = fraction_below(pot, dial);
     row.level_db = analysis.transfer(reference_hz).level_db();
     row.output_ohm = std::abs(looking_back.impedance(reference_hz));
     row.noise_uv = 1e6 * johnson_noise_v(analysis, 20, 20000, room_temperature_k);

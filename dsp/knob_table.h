@@ -24,8 +24,10 @@ struct KnobRow {
 };
 
 /// Rows at the given dials (0..10). T = mean power in the treble band minus mean power in the body band, in dB,
-/// averaged over log frequency; bands from listening_bands(). Throws InputError when there is no solution.
-std::vector<KnobRow> knob_table(const Hookup& hookup, const std::vector<double>& dials);
+/// averaged over log frequency; bands from listening_bands(). Of any knob the hookup has, every other at its own dial.
+/// Throws InputError when there is no solution.
+std::vector<KnobRow> knob_table(const Hookup& hookup, const std::vector<double>& dials,
+                                const Knob& knob = Knob::volume);
 
 /// `steps` dials from 0 to 10, evenly spaced; steps >= 2.
 std::vector<double> even_dials(int steps);

@@ -161,3 +161,16 @@ TEST_CASE("The right half of a hookup has the second gangs") {
   CHECK_THAT(gain(hookup, Driven::first, 5), WithinRel(0.5, 1e-6));
   CHECK_THAT(gain(right_half(hookup), Driven::first, 5), WithinRel(0.15, 1e-6));
 }
+
+TEST_CASE("The knob table is of any knob: a pedal's level is that of its own pot") {
+  Hookup hookup = line_hookup(0, 100e3, 1e12);
+  Stage pedal;
+  pedal.volume = Volume{};
+  pedal.volume->pot.total_ohm = 50e3;
+  hookup.then.push_back(pedal);
+  const std::vector<KnobRow> rows = knob_table(hookup, {0, 5, 10}, parse_knob(hookup, "pedal"));
+  CHECK(std::isinf(rows[0].level_db));
+  CHECK_THAT(rows[1].level_db, WithinAbs(20 * std::log10(0.5), 1e-4));  // 50k linear at half, hardly loaded
+  CHECK_THAT(rows[1].element_fraction, WithinAbs(0.5, 1e-12));
+  CHECK_THAT(rows[2].level_db, WithinAbs(0, 1e-4));
+}
