@@ -51,7 +51,6 @@ class Drawing {
     circuit_.gains.push_back(gain);
     circuit_.stages.emplace_back();
     network().emf = node(emf);
-    network().output = network().emf;
   }
 
   Circuit finish(const std::string& grid, double gain) {

@@ -6,6 +6,7 @@
 #include <vector>
 
 #include "dsp/error.h"
+#include "src/number_text.h"
 
 namespace unsoldered {
 namespace {
@@ -31,14 +32,6 @@ constexpr std::array<Kind, 4> kKinds = {{{FileKind::wav, "wav", "a WAV file", ".
 
 const Kind& about(FileKind kind) noexcept { return kKinds[static_cast<std::size_t>(kind)]; }
 
-std::string listed(const std::vector<std::string>& words) {
-  std::string text;
-  for (std::size_t i = 0; i < words.size(); ++i) {
-    text += (i == 0 ? "" : i + 1 == words.size() ? " or " : ", ") + words[i];
-  }
-  return text;
-}
-
 bool holds_rate(FileKind kind, int rate_hz) noexcept {
   if (kind == FileKind::ogg) return rate_hz <= kMostVorbisRate;
   return kind != FileKind::mp3 || std::find(kMp3Rates.begin(), kMp3Rates.end(), rate_hz) != kMp3Rates.end();
@@ -50,7 +43,7 @@ std::string rates_of(FileKind kind) {
   if (kind == FileKind::ogg) return "rates up to " + std::to_string(kMostVorbisRate) + " Hz";
   std::vector<std::string> rates;
   for (const int rate : kMp3Rates) rates.push_back(std::to_string(rate));
-  return listed(rates) + " Hz";
+  return in_a_row(rates, "or") + " Hz";
 }
 
 std::string usable_formats(const TakeFormat& take) {
@@ -58,7 +51,7 @@ std::string usable_formats(const TakeFormat& take) {
   for (const Kind& kind : kKinds) {
     if (holds_rate(kind.kind, take.rate_hz) && holds_channels(kind.kind, take.channels)) words.emplace_back(kind.word);
   }
-  return "--format " + listed(words);
+  return "--format " + in_a_row(words, "or");
 }
 
 Depth parse_depth(const std::string& text) {

@@ -30,4 +30,13 @@ std::string_view trimmed(std::string_view text) noexcept {
   return text.substr(first, text.find_last_not_of(kWhite) - first + 1);
 }
 
+std::string in_a_row(const std::vector<std::string>& words, std::string_view last) {
+  std::string text;
+  for (std::size_t i = 0; i < words.size(); ++i) {
+    if (i > 0) text += i + 1 == words.size() ? " " + std::string(last) + " " : ", ";
+    text += words[i];
+  }
+  return text;
+}
+
 }  // namespace unsoldered

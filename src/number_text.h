@@ -1,9 +1,10 @@
-// Numbers as text, the same in every locale.
+// Numbers as text, the same in every locale, and words in a row.
 #pragma once
 
 #include <optional>
 #include <string>
 #include <string_view>
+#include <vector>
 
 namespace unsoldered {
 
@@ -15,5 +16,8 @@ std::optional<double> parse_number(std::string_view text) noexcept;
 
 /// `text` without white space at its ends.
 std::string_view trimmed(std::string_view text) noexcept;
+
+/// "a, b and c" with `last` as the word before the last one.
+std::string in_a_row(const std::vector<std::string>& words, std::string_view last);
 
 }  // namespace unsoldered

@@ -112,13 +112,6 @@ std::string band_text(const Band& band, double low, double high) {
   return "from " + frequency_text(band.from_hz) + " to " + frequency_text(band.to_hz);
 }
 
-std::string joined(const std::vector<std::string>& words) {
-  std::string text;
-  for (std::size_t i = 0; i < words.size(); ++i)
-    text += (i == 0 ? "" : i + 1 == words.size() ? " and " : ", ") + words[i];
-  return text;
-}
-
 void report(const UndoFilter& undo, const std::string& played, const std::string& recorded, double boost_limit_db,
             double rate_hz, std::vector<std::string>& messages) {
   const double low = undo.from_hz.value_or(kUndoLowestHz);
@@ -129,8 +122,8 @@ void report(const UndoFilter& undo, const std::string& played, const std::string
     limited.push_back(band_text(band, low, high));
   }
   if (!limited.empty()) {
-    messages.push_back(played + ": " + joined(limited) + " the boost is held at " + format_number(boost_limit_db) +
-                       " dB");
+    messages.push_back(played + ": " + in_a_row(limited, "and") + " the boost is held at " +
+                       format_number(boost_limit_db) + " dB");
   }
   std::vector<std::string> beyond;
   if (undo.from_hz) beyond.push_back("below " + frequency_text(*undo.from_hz));
@@ -138,7 +131,7 @@ void report(const UndoFilter& undo, const std::string& played, const std::string
     if (band.to_hz > low) beyond.push_back(band_text(band, low, high));
   }
   if (!beyond.empty()) {
-    messages.push_back(played + ": " + joined(beyond) + " what " + recorded +
+    messages.push_back(played + ": " + in_a_row(beyond, "and") + " what " + recorded +
                        " took cannot be undone, and hardly anything is left there");
   }
   if (!undo.settled) {
